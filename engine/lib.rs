@@ -1,5 +1,5 @@
 pub mod disk { pub mod conditions; }
 pub mod errors;
-pub mod kinetics { pub mod mechanism; }
+pub mod kinetics;
 pub mod network { pub mod layout; pub mod model; }
 pub mod units;

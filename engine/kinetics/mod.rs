@@ -1,0 +1,15 @@
+//! Owns the mathematics of a cell: the abstract kinetic system and its integration in time.
+//!
+//! It never knows chemistry, files or units: species are indices, coefficients are numbers in
+//! units of the state.
+
+pub mod equations;
+pub mod factor;
+pub mod fluxes;
+pub mod integrate;
+pub mod jacobian;
+pub mod mechanism;
+pub mod sums;
+
+pub use integrate::{Outcome, Status, Tolerance, Work, integrate};
+pub use mechanism::{Coefficients, Factor, Falloff, Mechanism, MechanismError, Scratch, Step};

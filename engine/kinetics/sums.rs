@@ -1,0 +1,120 @@
+//! Owns sums of signed terms gathered from an array: each output is the sum of some terms with
+//! small integer weights.
+//!
+//! It never knows what the terms are: right-hand side and Jacobian both use it.
+
+/// The bounds of one output's terms in [`SignedSums::terms`].
+#[derive(Debug, Clone, Copy)]
+struct Row {
+    /// First term of weight -1; those before it, from the end of the previous row, have weight +1.
+    minus: u32,
+    /// One past the last term.
+    end: u32,
+}
+
+/// A term with a weight other than +1 or -1.
+#[derive(Debug, Clone, Copy)]
+struct Weighted {
+    row: u32,
+    term: u32,
+    weight: f64,
+}
+
+/// Output i = sum of weight * term over the entries given for row i.
+#[derive(Debug, Clone)]
+pub struct SignedSums {
+    rows: Vec<Row>,
+    terms: Vec<u32>,
+    weighted: Vec<Weighted>,
+}
+
+impl SignedSums {
+    /// Sums with `rows` outputs from entries (row, term, weight); the order of the entries is kept
+    /// within a row and a sign, so that the same entries always give the same bits.
+    pub fn new(rows: usize, entries: &[(usize, usize, i32)]) -> SignedSums {
+        let mut plus = vec![Vec::new(); rows];
+        let mut minus = vec![Vec::new(); rows];
+        let mut weighted = Vec::new();
+        for &(row, term, weight) in entries {
+            match weight {
+                1 => plus[row].push(term as u32),
+                -1 => minus[row].push(term as u32),
+                _ => weighted.push(Weighted {
+                    row: row as u32,
+                    term: term as u32,
+                    weight: f64::from(weight),
+                }),
+            }
+        }
+        let mut terms = Vec::with_capacity(entries.len());
+        let rows = plus
+            .iter()
+            .zip(&minus)
+            .map(|(plus, minus)| {
+                terms.extend_from_slice(plus);
+                let middle = terms.len() as u32;
+                terms.extend_from_slice(minus);
+                Row {
+                    minus: middle,
+                    end: terms.len() as u32,
+                }
+            })
+            .collect();
+        SignedSums {
+            rows,
+            terms,
+            weighted,
+        }
+    }
+
+    /// Writes every output.
+    pub fn evaluate(&self, source: &[f64], out: &mut [f64]) {
+        let mut start = 0usize;
+        for (row, value) in self.rows.iter().zip(out.iter_mut()) {
+            let (minus, end) = (row.minus as usize, row.end as usize);
+            let gain = gather(source, &self.terms[start..minus]);
+            let loss = gather(source, &self.terms[minus..end]);
+            *value = gain - loss;
+            start = end;
+        }
+        for term in &self.weighted {
+            out[term.row as usize] += term.weight * source[term.term as usize];
+        }
+    }
+}
+
+/// The sum of the named terms. Four running sums hide the latency of the additions.
+#[inline]
+fn gather(source: &[f64], terms: &[u32]) -> f64 {
+    let mut sums = [0.0f64; 4];
+    let mut fours = terms.chunks_exact(4);
+    for four in &mut fours {
+        sums[0] += source[four[0] as usize];
+        sums[1] += source[four[1] as usize];
+        sums[2] += source[four[2] as usize];
+        sums[3] += source[four[3] as usize];
+    }
+    let mut rest = 0.0;
+    for &term in fours.remainder() {
+        rest += source[term as usize];
+    }
+    ((sums[0] + sums[1]) + (sums[2] + sums[3])) + rest
+}
+
+#[cfg(test)]
+mod tests {
+    use super::SignedSums;
+
+    #[test]
+    fn every_weight_and_an_empty_row() {
+        // Wrong bounds of a row would mix the terms of neighbours; a lost weight breaks 2A -> B.
+        let source = [1.0, 10.0, 100.0, 1000.0, 1e4, 1e5];
+        let mut entries = vec![(0, 0, 1), (0, 1, -1), (0, 2, 2), (2, 3, -3), (2, 0, 1)];
+        entries.extend((0..6).map(|term| (3, term, -1)));
+        entries.extend((0..5).map(|term| (3, term, 1)));
+        let sums = SignedSums::new(4, &entries);
+        let mut out = [f64::NAN; 4];
+        sums.evaluate(&source, &mut out);
+        assert_eq!(out, [191.0, 0.0, -2999.0, -1e5]);
+    }
+}
