@@ -32,10 +32,35 @@ NAMED = {
     "customary default": "customary-photodesorption",
     "gas-phase value": "gas-phase-barrier",
     "same study as the other channels of this pair": "study-not-recovered",
+    "recalled, 354-370": "recalled-enthalpy-range",
+    "McBride, Zehe & Gordon 2002 NASA/TP-2002-211556": "mcbride2002",
+    "estimate (theory, capture or analogy) of the planetary neutral data set": "planetary-neutral-estimate",
+    "detailed balance from: estimate (theory, capture or analogy) of the planetary neutral data set": "planetary-neutral-estimate-reverse",
+    "compiled value, primary source not recovered": "compiled-source-not-recovered",
+    "McBride, Zehe & Gordon 2002 NASA/TP-2002-211556 (minus 6.197 kJ/mol to the stationary-electron convention)":
+        "mcbride2002-stationary-electron",
+    "own integration of the cross sections of Heays, Bosman & van Dishoeck 2017 A&A 602 A105": "heays2017-integrated",
+    "own integration of the Heays et al. 2017 A&A 602 A105 cross sections over the H2 emission spectrum":
+        "heays2017-integrated-h2-emission",
+    "Heays et al. 2017 A&A 602 A105 Table 19": "heays2017-table19",
+    "Heays et al. 2017 A&A 602 A105, tabulated value recalled": "heays2017-recalled",
+    "Visser, van Dishoeck & Black 2009 A&A 503 323": "visser2009",
+    "Garland 1998 doi:10.1002/kin.550270108": "garland1998-doi",
+    "Herron 1991 doi:10.1021/j100330a028": "herron1991-doi",
+    "Le Picard et al. 2001 A & A 372 1064": "lepicard2001-aa372",
+    "Geppert 2006 (total 8.9e-7; BR 0.51); Geppert 2006": "geppert2006-br-0.51",
+    "Ocana et al. 2017 ApJ 850 28 (1.2e-10 at 22 K, 2.1e-11 at 107 K, 2.6e-10 extrapolated to 10 K; own power law, "
+    "joins the 300 K value)": "ocana2017-below-300k",
+    "computed here from the sublimation pressure (Landolt-Boernstein sublimation constants (chemicals package))":
+        "sublimation-landolt-boernstein",
+    "computed here from the sublimation pressure (triple point 0.186 Pa at 175.6 K (liquid correlation gives 0.176))":
+        "sublimation-ch3oh-triple-point",
+    "no direct measurement agreed; 1e-4 to 1e-3": "no-agreed-measurement",
 }
 TEXT = {
     "same study as the other channels of this pair": "one study for all channels of the pair, citation not recovered",
     "recalled": "enthalpy recalled, source not recovered",
+    "recalled, 354-370": "enthalpy recalled, values between 354 and 370 kJ/mol in use",
     "estimated": "enthalpy estimated",
     "customary default": "customary default of 1e-3 molecules per photon where nothing is measured, estimated within a factor 10",
 }
@@ -45,9 +70,10 @@ def ascii_only(text):
     return "".join(c for c in unicodedata.normalize("NFKD", text) if not unicodedata.combining(c))
 
 
-def slug(text, words=6):
-    found = re.findall(r"[a-z0-9]+(?:\.[0-9]+)?", ascii_only(text).lower().replace("'", ""))
-    return "-".join([w for w in found if w not in ("the", "of", "a", "et", "al")][:words])
+def slug(text, words=6, numbers=False):
+    found = re.findall(r"[a-z0-9.]*[a-z0-9]", ascii_only(text).lower().replace("'", ""))
+    found = [w for w in found if w not in ("the", "of", "a", "et", "al") and (numbers or not w[0].isdigit())]
+    return "-".join(found[:words])
 
 
 def citations(text):
@@ -89,11 +115,12 @@ class Sources:
         """The string with short forms written out; those that carry their own journal stay as they are."""
         out, last = "", 0
         for key, start, end in citations(text):
-            journal = re.match(r"\s+(?:[A-Z][\w.&]*\s*)+\d", text[end:]) or re.match(r"\s+arXiv", text[end:])
-            if key in self.full and not journal:
+            own_journal = re.match(r"\s+[A-Z]", text[end:])
+            if key in self.full and not own_journal:
                 out += text[last:start] + self.full[key]
                 last = end
-        return re.sub(r"\s*;\s*", "; ", out + text[last:])
+        parts = re.split(r"\s*;\s*", out + text[last:])
+        return "; ".join(dict.fromkeys(parts))
 
     def learn(self, strings, gas_rows):
         """Fixes the key of every reference string; strings of the same citations share or extend a key."""
@@ -104,18 +131,21 @@ class Sources:
         groups = collections.OrderedDict()
         for text in sorted(set(strings)):
             cited = list(dict.fromkeys(k for k, _, _ in citations(text)))
-            groups.setdefault("+".join(cited), []).append(text)
+            if text in NAMED:
+                self.give(text, NAMED[text])
+            else:
+                groups.setdefault("+".join(cited), []).append(text)
         for base, texts in groups.items():
             if not base:
                 for text in texts:
-                    self.give(text, NAMED.get(text) or slug(text))
+                    self.give(text, slug(text))
                 continue
             bare = [t for t in texts if self.remainder(t) == ""]
             for text in bare:
                 self.give(text, base)
             rest = [t for t in texts if t not in bare]
-            alone = len(rest) == 1 and not bare and base not in self.full
-            for length in range(3, 12):     # as few words as tell the strings of this group apart
+            alone = len(rest) == 1 and not bare and base not in self.texts
+            for length in range(3, 15):     # as few words as tell the strings of this group apart
                 keys = [base if alone else base + "-" + self.qualifier(t, length) for t in rest]
                 if len(set(keys)) == len(keys):
                     break
@@ -145,7 +175,7 @@ class Sources:
         if "doi:" in rest:
             words.append("doi")
         brackets = " ".join(re.findall(r"\(([^()]*)", rest))
-        said = slug(brackets or rest, length)
+        said = slug(brackets or rest, length % 12, numbers=length >= 12)
         return "-".join(words + ([said] if said else []))
 
     def give(self, text, key):
@@ -185,9 +215,10 @@ class Sources:
         return self.joined(keys)
 
     def joined(self, keys):
-        key = "+".join(keys)
-        if key not in self.texts:
-            self.texts[key] = "; ".join(self.texts[k] for k in keys)
+        text = "; ".join(self.texts[k] for k in keys)
+        key = "+".join(dict.fromkeys(part for k in keys for part in k.split("+")))
+        if self.texts.setdefault(key, text) != text:
+            raise SystemExit("key %s for two citations:\n  %s\n  %s" % (key, self.texts[key], text))
         return self.add(key)
 
     def species_key(self, enthalpy_source, polar, atom):

@@ -36,6 +36,10 @@ SHORTER = [
     ("M = all heavy colliders (H2, He, H); rate = k0[M]kinf/(k0[M]+kinf) with broadening Fc", ""),
     ("rate = k[M][X], low-pressure limit, M = H2, He, H", "low-pressure limit"),
     ("a in cm6 s-1", ""),
+    ("line process: multiply by the self-shielding function", "line process"),
+    ("line process: multiply by the table in co_shielding.csv", "line process"),
+    ("line process: self-shielding, see h2_shielding.md", "line process"),
+    ("branching after branching from", "branching from"),
     ("300 K value kept, temperature dependence of dipole capture", "300 K value, slope of dipole capture"),
     ("literature range not stated, taken as 300 K upward", "range not stated, taken as 300 K up"),
     ("total agrees with the planetary-ion data set within 30 percent at 300 K", "two collections agree to 30 percent at 300 K"),
@@ -53,16 +57,15 @@ def table(folder, name):
 
 
 def real(x):
-    """A float with a dot in it, as YAML 1.1 and 1.2 readers both take it for one."""
-    text = repr(float(x))
-    mantissa, _, exponent = text.partition("e")
-    value = abs(float(x))
-    if not exponent and value != 0.0 and value < 1e-3:     # repr writes 1e-4 as 0.0001
-        mantissa, _, exponent = ("%.15e" % float(x)).partition("e")
-        mantissa = repr(float(mantissa))
-    if "." not in mantissa:
-        mantissa += ".0"
-    return mantissa + ("e%d" % int(exponent) if exponent else "")
+    """A float with a dot and a signed exponent: YAML 1.1 and 1.2 readers both take it for one."""
+    value = float(x)
+    if value == 0.0 or 1e-3 <= abs(value) < 1e6:
+        return repr(value)
+    mantissa, _, exponent = ("%.15e" % value).partition("e")
+    text = "%se%+d" % (repr(float(mantissa)), int(exponent))
+    if float(text) != value:
+        raise SystemExit("%s cannot be written exactly" % x)
+    return text
 
 
 def whole(x):
@@ -82,7 +85,7 @@ def scalar(text):
 
 
 def flow(pairs):
-    return "{" + ", ".join("%s: %s" % (scalar(k), v) for k, v in pairs if v is not None) + "}"
+    return "{" + ", ".join("%s: %s" % (k if "_" in k else scalar(k), v) for k, v in pairs if v is not None) + "}"
 
 
 def shorten(note):
@@ -249,8 +252,8 @@ def ice_lines(species, binding, photodesorption, sources, report):
     yields = collections.defaultdict(list)
     previous = ""
     for row in photodesorption:
-        source = re.sub(r"^same\b", previous, row["source"])
-        if not row["source"].startswith("same"):
+        source = re.sub(r"^same(?=;|$)", previous, row["source"])
+        if source == row["source"]:
             previous = row["source"]
         products = row["process"].split(" -> ")[1]
         yields[row["species"]].append((products, row["yield"], source))
