@@ -61,11 +61,9 @@ def real(x):
     value = float(x)
     if value == 0.0 or 1e-3 <= abs(value) < 1e6:
         return repr(value)
-    mantissa, _, exponent = ("%.15e" % value).partition("e")
-    text = "%se%+d" % (repr(float(mantissa)), int(exponent))
-    if float(text) != value:
-        raise SystemExit("%s cannot be written exactly" % x)
-    return text
+    text = next(t for t in ("%.*e" % (digits, value) for digits in range(1, 18)) if float(t) == value)
+    mantissa, _, exponent = text.partition("e")
+    return "%se%+d" % (mantissa, int(exponent))
 
 
 def whole(x):
