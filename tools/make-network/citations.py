@@ -222,7 +222,7 @@ class Sources:
         return self.add(key)
 
     def species_key(self, enthalpy_source, polar, atom):
-        keys = [self.key(enthalpy_source)]
+        keys = [self.keys[enthalpy_source]]
         if polar and atom:
             self.texts["schwerdtfeger2019"] = "Schwerdtfeger & Nagle 2019 Mol. Phys. 117 1200 (polarisability)"
             keys.append("schwerdtfeger2019")
