@@ -90,19 +90,29 @@ pub enum Cause {
     ThermalDesorption { binding: Binding },
     CosmicDesorption { binding: Binding },
     Photodesorption { yields: f64 },
-    /// Langmuir-Hinshelwood. `share` includes the branching and the leaving (or staying) share.
+    /// Langmuir-Hinshelwood. `own.share` includes the branching and the leaving (or staying)
+    /// share; `channels` are all channels of the pair, this one included, with their branching.
     Surface {
         first: Binding,
         second: Binding,
         /// Whether both reactants are the same species.
         same: bool,
-        barrier: f64,
-        /// A.
-        width: f64,
-        /// amu.
-        tunnelling_mass: f64,
-        share: f64,
+        own: Barrier,
+        channels: Vec<Barrier>,
     },
+}
+
+/// The energy barrier of one channel of a surface encounter.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Barrier {
+    /// K; 0 for none.
+    pub height: f64,
+    /// A.
+    pub width: f64,
+    /// Mass that tunnels, amu.
+    pub mass: f64,
+    /// Share of the attempts that take this channel.
+    pub share: f64,
 }
 
 /// One expanded reaction.

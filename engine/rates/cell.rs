@@ -1,9 +1,8 @@
 //! Owns the evaluation of all coefficients of a network in one cell, in units of the state
 //! (abundances per hydrogen nucleus, s^-1), and the count of uses outside a law's range.
 
-use super::surface::{self, Pair};
 use super::two_body::{self, Place, power_law};
-use super::{dust, ice, light, shielding};
+use super::{dust, ice, light, shielding, surface};
 use crate::disk::conditions::{Conditions, FieldKind, Light};
 use crate::kinetics::{Coefficients, Falloff};
 use crate::network::model::{Cause, Chemistry, Range};
@@ -204,15 +203,11 @@ impl<'a> Cell<'a> {
                 options.site_density,
                 options.lit_layers,
             ),
-            Cause::Surface { first, second, same, barrier, width, tunnelling_mass, share } => {
-                let pair = Pair {
-                    first,
-                    second,
-                    barrier: *barrier,
-                    width: *width,
-                    tunnelling_mass: *tunnelling_mass,
-                };
-                share * self.surface(&pair, *same)
+            Cause::Surface { first, second, same, own, channels } => {
+                let (density, t) = (options.site_density, c.t_dust);
+                let pair = [first, second];
+                surface::reaction_probability(pair, *own, channels, density, t)
+                    * surface::encounter(pair, *same, c.sites(density), density, t)
             }
         }
     }
@@ -231,13 +226,5 @@ impl<'a> Cell<'a> {
             total += light.strength * rate * shielded * light::attenuation(kind, light, extinction);
         }
         total
-    }
-
-    fn surface(&self, pair: &Pair<'_>, same: bool) -> f64 {
-        let density = self.chemistry.options.site_density;
-        let t = self.conditions.t_dust;
-        let sites = self.conditions.sites(density);
-        surface::reaction_probability(pair, density, t)
-            * surface::encounter(pair, same, sites, density, t)
     }
 }

@@ -4,7 +4,7 @@
 //! It never confines reactions to layers: the factor `Encounters` of `kinetics::mechanism` does.
 
 use super::ice::{harmonic_frequency, thermal_desorption};
-use crate::network::model::Binding;
+use crate::network::model::{Barrier, Binding};
 use crate::units::{ATOMIC_MASS, BOLTZMANN, PLANCK_REDUCED};
 
 /// Thermal hopping rate from site to site, s^-1: nu_harmonic exp(-E_hop/T_dust)
@@ -21,42 +21,45 @@ pub fn tunnelling(barrier: f64, width: f64, mass: f64) -> f64 {
     (-2.0 * width * 1e-8 / PLANCK_REDUCED * momentum).exp()
 }
 
-/// One pair of adsorbed reactants with its barrier.
-pub struct Pair<'a> {
-    pub first: &'a Binding,
-    pub second: &'a Binding,
-    /// K.
-    pub barrier: f64,
-    /// A.
-    pub width: f64,
-    /// amu.
-    pub tunnelling_mass: f64,
+/// Rate at which two adsorbed species that share a site cross a barrier, s^-1: attempts at the
+/// faster of their vibrations times the larger of exp(-E/T_dust) and tunnelling.
+pub fn crossing(pair: [&Binding; 2], barrier: Barrier, site_density: f64, t_dust: f64) -> f64 {
+    let [a, b] = pair.map(|b| harmonic_frequency(site_density, b.hop_energy, b.mass));
+    let through = tunnelling(barrier.height, barrier.width, barrier.mass);
+    a.max(b) * (-barrier.height / t_dust).exp().max(through)
 }
 
-/// Probability that two species which share a site react before one of them hops or desorbs
-/// (Garrod & Pauly 2011, ApJ 735, 15): p/(p + hops + desorptions); 1 without a barrier.
-pub fn reaction_probability(pair: &Pair, site_density: f64, t_dust: f64) -> f64 {
-    if pair.barrier == 0.0 {
-        return 1.0;
+/// Probability that two species which share a site react through `own` before one of them hops or
+/// desorbs: w p / (sum of w p over the `channels` of the pair + hops + desorptions) (Garrod & Pauly
+/// 2011, ApJ 735, 15, for one channel); the share itself where there is no barrier.
+pub fn reaction_probability(
+    pair: [&Binding; 2],
+    own: Barrier,
+    channels: &[Barrier],
+    site_density: f64,
+    t_dust: f64,
+) -> f64 {
+    if own.height == 0.0 {
+        return own.share;
     }
-    let frequency = |b: &Binding| harmonic_frequency(site_density, b.hop_energy, b.mass);
-    let attempts = frequency(pair.first).max(frequency(pair.second));
-    let crossing = (-pair.barrier / t_dust)
-        .exp()
-        .max(tunnelling(pair.barrier, pair.width, pair.tunnelling_mass));
-    let reacts = attempts * crossing;
-    let leaves: f64 = [pair.first, pair.second]
-        .into_iter()
-        .map(|b| hopping(b, site_density, t_dust) + thermal_desorption(b, t_dust))
-        .sum();
-    if reacts == 0.0 { 0.0 } else { reacts / (reacts + leaves) }
+    let rate = |b: &Barrier| b.share * crossing(pair, *b, site_density, t_dust);
+    let parts = pair.map(|b| hopping(b, site_density, t_dust) + thermal_desorption(b, t_dust));
+    let all: f64 = channels.iter().map(rate).sum::<f64>() + parts[0] + parts[1];
+    let reacts = rate(&own);
+    if reacts == 0.0 { 0.0 } else { reacts / all }
 }
 
 /// Encounter coefficient per pair of abundances, s^-1: either partner hops over `sites` (per H);
 /// a species meeting itself counts each pair once.
-pub fn encounter(pair: &Pair, same: bool, sites: f64, site_density: f64, t_dust: f64) -> f64 {
-    let hops = hopping(pair.first, site_density, t_dust) + hopping(pair.second, site_density, t_dust);
-    hops / sites * if same { 0.5 } else { 1.0 }
+pub fn encounter(
+    pair: [&Binding; 2],
+    same: bool,
+    sites: f64,
+    site_density: f64,
+    t_dust: f64,
+) -> f64 {
+    let [a, b] = pair.map(|b| hopping(b, site_density, t_dust));
+    (a + b) / sites * if same { 0.5 } else { 1.0 }
 }
 
 #[cfg(test)]
@@ -71,9 +74,10 @@ mod tests {
         Binding { energy: 1390.0, prefactor: 9.14e14, hop_energy: 1300.0, hop_barrier: 650.0, mass: 28.01 }
     }
 
-    fn pair<'a>(h: &'a Binding, co: &'a Binding, barrier: f64) -> Pair<'a> {
-        let reduced = 1.008 * 28.01 / 29.018;
-        Pair { first: h, second: co, barrier, width: 1.0, tunnelling_mass: reduced }
+    const REDUCED: f64 = 1.008 * 28.01 / 29.018;
+
+    fn barrier(height: f64) -> Barrier {
+        Barrier { height, width: 1.0, mass: REDUCED, share: 1.0 }
     }
 
     /// Fails if hbar, the width's unit or the square root is off. By hand with CODATA 2018:
@@ -94,20 +98,34 @@ mod tests {
     #[test]
     fn competition_with_diffusion() {
         let (h, co) = (hydrogen(), carbon_monoxide());
-        let kappa = reaction_probability(&pair(&h, &co, 2500.0), 1.5e15, 10.0);
-        assert!(kappa > 0.99, "{kappa}");
-        let kappa = reaction_probability(&pair(&h, &co, 20000.0), 1.5e15, 30.0);
-        let p = 4.04e12 * tunnelling(20000.0, 1.0, 1.008 * 28.01 / 29.018);
+        let kappa = |height, t| {
+            reaction_probability([&h, &co], barrier(height), &[barrier(height)], 1.5e15, t)
+        };
+        assert!(kappa(2500.0, 10.0) > 0.99, "{}", kappa(2500.0, 10.0));
+        let p = harmonic_frequency(1.5e15, 650.0, 1.008) * tunnelling(20000.0, 1.0, REDUCED);
         let slow = p / (hopping(&h, 1.5e15, 30.0) + thermal_desorption(&h, 30.0));
-        assert!((kappa / slow - 1.0).abs() < 1e-2);
-        assert_eq!(reaction_probability(&pair(&h, &co, 0.0), 1.5e15, 10.0), 1.0);
+        assert!((kappa(20000.0, 30.0) / slow - 1.0).abs() < 1e-2);
+        assert_eq!(kappa(0.0, 10.0), 1.0);
+    }
+
+    /// Fails if channels of one pair do not compete: their probabilities must sum to at most one,
+    /// in the ratio of their crossing rates.
+    #[test]
+    fn channels_of_one_pair_compete() {
+        let (h, co) = (hydrogen(), carbon_monoxide());
+        let channels = [barrier(2000.0), barrier(2600.0)];
+        let kappa =
+            channels.map(|own| reaction_probability([&h, &co], own, &channels, 1.5e15, 8.0));
+        let p = channels.map(|own| crossing([&h, &co], own, 1.5e15, 8.0));
+        assert!(kappa[0] + kappa[1] <= 1.0 && kappa[0] + kappa[1] > 0.99);
+        assert!((kappa[0] / kappa[1] / (p[0] / p[1]) - 1.0).abs() < 1e-12);
     }
 
     /// Fails if pairs of one species are counted twice.
     #[test]
     fn a_species_meets_itself_half_as_often() {
         let h = hydrogen();
-        let same = encounter(&pair(&h, &h, 0.0), true, 3.5e-6, 1.5e15, 10.0);
+        let same = encounter([&h, &h], true, 3.5e-6, 1.5e15, 10.0);
         assert!((same / (hopping(&h, 1.5e15, 10.0) / 3.5e-6) - 1.0).abs() < 1e-14);
     }
 }

@@ -1,0 +1,77 @@
+//! Owns the check of the linear invariants: each element, charge, dust grains, and the ice total.
+//!
+//! It never repairs anything. Element sums, charge and dust number are kept by the solver to
+//! round-off, so a drift is a defect of the code; it says nothing about accuracy.
+
+use super::record::Balance;
+use crate::network::model::{Chemistry, Phase};
+
+/// What is counted, worked out once per network.
+#[derive(Debug, Clone)]
+pub struct Invariants {
+    /// Atoms per species, by element (dust grains are the element `dust`).
+    elements: Vec<(String, Vec<(usize, f64)>)>,
+    charges: Vec<(usize, f64)>,
+    ices: Vec<usize>,
+    ice_total: Option<usize>,
+}
+
+impl Invariants {
+    pub fn new(chemistry: &Chemistry) -> Self {
+        let mut elements: Vec<(String, Vec<(usize, f64)>)> = Vec::new();
+        for (id, species) in chemistry.species.iter().enumerate() {
+            for (element, count) in &species.atoms {
+                let entry = (id, f64::from(*count));
+                match elements.iter_mut().find(|(name, _)| name == element) {
+                    Some((_, list)) => list.push(entry),
+                    None => elements.push((element.clone(), vec![entry])),
+                }
+            }
+        }
+        let of = |phase| {
+            let all = chemistry.species.iter().enumerate();
+            all.filter(move |(_, s)| s.phase == phase).map(|(id, _)| id)
+        };
+        Invariants {
+            elements,
+            charges: (chemistry.species.iter().enumerate())
+                .filter(|(_, s)| s.charge != 0)
+                .map(|(id, s)| (id, f64::from(s.charge)))
+                .collect(),
+            ices: of(Phase::Ice).collect(),
+            ice_total: of(Phase::IceTotal).next(),
+        }
+    }
+
+    /// Sum over species of atoms times abundance, for every element (and `dust`).
+    pub fn totals(&self, state: &[f64]) -> Vec<(String, f64)> {
+        let sum = |list: &[(usize, f64)]| list.iter().map(|(id, n)| n * state[*id]).sum();
+        self.elements.iter().map(|(name, list)| (name.clone(), sum(list))).collect()
+    }
+
+    /// Drifts of `state` since `start`. Elements and dust relative to their own totals, charge
+    /// relative to the sum of |charge| x abundance, the ice total relative to itself (or to the
+    /// abundance of all elements where there is hardly any ice).
+    pub fn drift(&self, start: &[f64], state: &[f64]) -> Balance {
+        let mut balance = Balance { elements: 0.0, charge: 0.0, dust: 0.0, ice: 0.0 };
+        for ((name, before), (_, now)) in self.totals(start).iter().zip(self.totals(state)) {
+            let drift = if *before == 0.0 { now.abs() } else { (now / before - 1.0).abs() };
+            if name == "dust" {
+                balance.dust = drift;
+            } else {
+                balance.elements = balance.elements.max(drift);
+            }
+        }
+        let charge = |y: &[f64]| self.charges.iter().map(|(id, q)| q * y[*id]).sum::<f64>();
+        let scale: f64 = self.charges.iter().map(|(id, q)| (q * state[*id]).abs()).sum();
+        if scale > 0.0 {
+            balance.charge = (charge(state) - charge(start)).abs() / scale;
+        }
+        if let Some(total) = self.ice_total {
+            let sum: f64 = self.ices.iter().map(|id| state[*id]).sum();
+            // Below 1e-15 per H there is no ice to speak of: compare with that.
+            balance.ice = (state[total] - sum).abs() / sum.abs().max(1e-15);
+        }
+        balance
+    }
+}
