@@ -1,5 +1,7 @@
 pub mod disk { pub mod conditions; }
 pub mod errors;
 pub mod kinetics;
-pub mod network { pub mod layout; pub mod model; }
+pub mod network;
+pub mod rates;
 pub mod units;
+pub mod yaml;
