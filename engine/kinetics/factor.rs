@@ -176,10 +176,10 @@ mod tests {
         let lifted = Falloff {
             low: 2.0,
             high: 3.0,
-            log_centre: 0.25,
+            log_centre: 0.3,
         };
         assert_eq!(
-            falloff(&lifted, ONE(4.5)),
+            falloff(&lifted, ONE(3.0)),
             FactorValue {
                 value: 3.0,
                 slope: 0.0

