@@ -1,4 +1,5 @@
-pub mod disk { pub mod conditions; }
+pub mod case;
+pub mod disk;
 pub mod errors;
 pub mod kinetics;
 pub mod network;
