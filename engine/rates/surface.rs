@@ -81,27 +81,27 @@ mod tests {
     }
 
     /// Fails if hbar, the width's unit or the square root is off. By hand with CODATA 2018:
-    /// H + CO, 2500 K, 1 A: 2 a/hbar sqrt(2 mu k E) = 14.07 -> 7.8e-7.
+    /// H + CO, 2500 K, 1 A: 2 a/hbar sqrt(2 mu k E) = 20.03, one attempt in 5e8.
     #[test]
     fn tunnelling_of_h_through_the_co_barrier() {
         let mu: f64 = 1.008 * 28.01 / 29.018;
         let exponent = 2e-8 / 1.054_571_817e-27
             * (2.0 * mu * 1.660_539_066_6e-24 * 1.380_649e-16 * 2500.0).sqrt();
         let p = tunnelling(2500.0, 1.0, mu);
-        assert!((p.ln() + exponent).abs() < 1e-9);
-        assert!((exponent - 14.07).abs() < 0.03, "{exponent}");
+        assert!((p.ln() + exponent).abs() < 1e-7);
+        assert!((exponent - 20.03).abs() < 0.01, "{exponent}");
     }
 
     /// Fails if the competition is left out: at 10 K H crosses the CO barrier more often than it
-    /// hops away, so nearly every encounter reacts although one attempt in 1e6 succeeds (Garrod &
-    /// Pauly 2011); a slow barrier follows p/(hop + desorb).
+    /// hops away (by hand: 8.1e3 against 5.3e2 s^-1), so most encounters react although one attempt
+    /// in 5e8 succeeds (Garrod & Pauly 2011); a slow barrier follows p/(hop + desorb).
     #[test]
     fn competition_with_diffusion() {
         let (h, co) = (hydrogen(), carbon_monoxide());
         let kappa = |height, t| {
             reaction_probability([&h, &co], barrier(height), &[barrier(height)], 1.5e15, t)
         };
-        assert!(kappa(2500.0, 10.0) > 0.99, "{}", kappa(2500.0, 10.0));
+        assert!((kappa(2500.0, 10.0) - 0.938).abs() < 2e-3, "{}", kappa(2500.0, 10.0));
         let p = harmonic_frequency(1.5e15, 650.0, 1.008) * tunnelling(20000.0, 1.0, REDUCED);
         let slow = p / (hopping(&h, 1.5e15, 30.0) + thermal_desorption(&h, 30.0));
         assert!((kappa(20000.0, 30.0) / slow - 1.0).abs() < 1e-2);
