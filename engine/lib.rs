@@ -1,8 +1,12 @@
+pub mod answers;
 pub mod case;
+pub mod command;
 pub mod disk;
 pub mod errors;
 pub mod kinetics;
 pub mod network;
 pub mod rates;
+pub mod run;
+pub mod store;
 pub mod units;
 pub mod yaml;

@@ -78,3 +78,9 @@ impl<'a> Findings<'a> {
         self.errors
     }
 }
+
+impl std::fmt::Display for Warning {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        write!(f, "line {}: {}: {}", self.line, self.entry, self.text)
+    }
+}

@@ -93,7 +93,7 @@ fn starts(
         .map(|c| (c.name.clone(), c.abundances.clone()))
         .collect();
     let of_cell = |cell: &crate::disk::conditions::Conditions| {
-        start_state(&case.start, chemistry, &compositions, cell.dust_abundance())
+        start_state(&case.start, &compositions, chemistry, cell.dust_abundance())
     };
     disk.cells.iter().map(of_cell).collect::<Result<_, _>>().map_err(Failure::from)
 }

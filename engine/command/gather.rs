@@ -1,0 +1,28 @@
+//! The verb `gather`.
+
+use super::{Outcome, wrong};
+use crate::errors::Failure;
+use crate::run;
+use std::path::PathBuf;
+
+#[derive(Debug, clap::Args)]
+pub struct Arguments {
+    /// The journal of the run (beside its output, ending in .journal)
+    journal: PathBuf,
+    /// The run file to write [default: NAME.partial.h5 beside the journal]
+    #[arg(long)]
+    output: Option<PathBuf>,
+}
+
+pub fn gather(arguments: &Arguments) -> Result<Outcome, Failure> {
+    let output = arguments
+        .output
+        .clone()
+        .unwrap_or_else(|| arguments.journal.with_extension("partial.h5"));
+    if output == arguments.journal {
+        return Err(wrong("--output", "the journal itself", "another file"));
+    }
+    let (finished, cells) = run::gather(&arguments.journal, &output)?;
+    log::info!("{finished} of {cells} cells in {}", output.display());
+    Ok(Outcome::Done)
+}
