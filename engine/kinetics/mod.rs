@@ -4,6 +4,8 @@
 //! units of the state.
 
 pub mod equations;
+#[cfg(test)]
+mod exactness;
 pub mod factor;
 pub mod fluxes;
 pub mod integrate;
