@@ -86,7 +86,7 @@ enum Outcome {
 fn start_log(quiet: bool) -> MultiProgress {
     let level = if quiet { "warn" } else { "info" };
     let mut builder =
-        env_logger::Builder::from_env(env_logger::Env::default().default_filter_or(level));
+        env_logger::Builder::from_env(env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")));
     let logger = builder
         .format(|out, record| {
             use std::io::Write;
