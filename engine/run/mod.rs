@@ -3,8 +3,10 @@
 //!
 //! It never integrates anything itself: what one cell does is a function handed to [`workers`].
 
+mod frame;
 pub mod journal;
 pub mod progress;
 pub mod record;
+mod same_run;
 pub mod signals;
 pub mod workers;

@@ -88,9 +88,12 @@ impl PartFile {
 
 impl Drop for PartFile {
     fn drop(&mut self) {
-        if !self.published
-            && let Err(cause) = std::fs::remove_file(&self.part)
-        {
+        if self.published {
+            return;
+        }
+        // Emptied first: a handle that HDF5 still holds would keep the blocks of a removed file.
+        let emptied = self.handle.set_len(0);
+        if let Err(cause) = emptied.and_then(|()| std::fs::remove_file(&self.part)) {
             log::warn!("{}: could not be removed: {cause}", self.part.display());
         }
     }
