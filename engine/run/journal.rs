@@ -12,7 +12,9 @@ use std::path::{Path, PathBuf};
 
 use fs4::fs_std::FileExt;
 
+use super::frame::{FRAME, fill, push_frame, read_frame};
 use super::record::{CellRecord, CellStatus};
+use super::same_run::differences;
 use crate::errors::{Failure, InputError};
 use crate::store::durable::sync_directory_of;
 use crate::store::header::RunHeader;
@@ -22,11 +24,8 @@ pub const MAGIC: &[u8; 8] = b"frstjrnl";
 /// Raised whenever the meaning of any byte changes.
 const FORMAT: u32 = 1;
 const PREAMBLE: usize = MAGIC.len() + 4;
-const FRAME: usize = 1 + 8 + 4;
 const KIND_HEADER: u8 = 1;
 const KIND_CELL: u8 = 2;
-/// How many differing lines of a case are shown.
-const LINES_SHOWN: usize = 3;
 
 /// Where the record of a cell stands.
 #[derive(Debug, Clone, Copy)]
@@ -162,7 +161,7 @@ impl Journal {
     }
 
     /// Appends records and syncs once: when this returns Ok they survive a kill and a power cut.
-    /// A second record of a cell takes the place of its first.
+    /// A second record of a cell takes the place of its first; a missing cell is none to record.
     pub fn append(&mut self, records: &[CellRecord]) -> Result<(), Failure> {
         let path = &self.records.path;
         if self.broken {
@@ -174,7 +173,10 @@ impl Journal {
         }
         let mut frames = Vec::new();
         let mut places = Vec::with_capacity(records.len());
-        for record in records {
+        let recorded = records
+            .iter()
+            .filter(|record| record.status != CellStatus::Missing);
+        for record in recorded {
             let offset = self.end + frames.len() as u64;
             places.push((
                 record.cell,
@@ -293,52 +295,6 @@ fn preamble_and_header(header: &RunHeader) -> Vec<u8> {
     bytes
 }
 
-fn push_frame(out: &mut Vec<u8>, kind: u8, body: &[u8]) {
-    let length = (body.len() as u64).to_le_bytes();
-    out.push(kind);
-    out.extend_from_slice(&length);
-    out.extend_from_slice(&checksum(kind, length, body).to_le_bytes());
-    out.extend_from_slice(body);
-}
-
-fn checksum(kind: u8, length: [u8; 8], body: &[u8]) -> u32 {
-    let mut hasher = crc32fast::Hasher::new();
-    hasher.update(&[kind]);
-    hasher.update(&length);
-    hasher.update(body);
-    hasher.finalize()
-}
-
-/// The next frame, or None where there is no whole, intact one. `left` is what the file still
-/// holds: a damaged length must not ask for more memory than that.
-fn read_frame(from: &mut impl Read, left: u64) -> io::Result<Option<(u8, Vec<u8>)>> {
-    let mut head = [0; FRAME];
-    if !fill(from, &mut head)? {
-        return Ok(None);
-    }
-    let [kind, l0, l1, l2, l3, l4, l5, l6, l7, c0, c1, c2, c3] = head;
-    let length = [l0, l1, l2, l3, l4, l5, l6, l7];
-    let size = u64::from_le_bytes(length);
-    if size > left.saturating_sub(FRAME as u64) {
-        return Ok(None);
-    }
-    let mut body = Vec::new();
-    // `take` grows the buffer with what is really there, whatever the length claims.
-    from.take(size).read_to_end(&mut body)?;
-    let whole = body.len() as u64 == size;
-    let intact = whole && checksum(kind, length, &body) == u32::from_le_bytes([c0, c1, c2, c3]);
-    Ok(intact.then_some((kind, body)))
-}
-
-/// Fills the buffer; false at the end of the file.
-fn fill(from: &mut impl Read, buffer: &mut [u8]) -> io::Result<bool> {
-    match from.read_exact(buffer) {
-        Ok(()) => Ok(true),
-        Err(cause) if cause.kind() == io::ErrorKind::UnexpectedEof => Ok(false),
-        Err(cause) => Err(cause),
-    }
-}
-
 /// Reads everything that is whole; gives the records and where they end.
 fn scan(path: &Path, file: File) -> Result<(Records, u64), Failure> {
     let failed = |cause: io::Error| Failure::machine("reading the journal", path, cause);
@@ -417,106 +373,6 @@ fn scan(path: &Path, file: File) -> Result<(Records, u64), Failure> {
         },
         end,
     ))
-}
-
-/// What keeps the run of `now` from continuing the journal of `then`.
-fn differences(path: &Path, then: &RunHeader, now: &RunHeader) -> Vec<InputError> {
-    const WAY_OUT: &str = " (or start over with --fresh, or choose another output)";
-    let differs = |what: String, then: &str, now: &str| {
-        InputError::new(
-            path,
-            None,
-            what,
-            format!("`{then}`"),
-            format!("`{now}`{WAY_OUT}"),
-        )
-    };
-    let mut found = Vec::new();
-    if then.engine_version != now.engine_version {
-        found.push(differs(
-            "engine version".into(),
-            &then.engine_version,
-            &now.engine_version,
-        ));
-    }
-    if then.kernel != now.kernel {
-        found.push(differs(
-            "numerical kernel".into(),
-            &then.kernel,
-            &now.kernel,
-        ));
-    }
-    for (line, then, now) in differing_lines(&then.case_text, &now.case_text) {
-        found.push(differs(format!("resolved case, line {line}"), then, now));
-    }
-    if let Some((line, then, now)) = differing_lines(&then.network_text, &now.network_text).next() {
-        found.push(differs(format!("network text, line {line}"), then, now));
-    }
-    // Compared by their bytes, as the hash is: the cells of a table may differ in the last bit.
-    if found.is_empty() && then.input_hash() != now.input_hash() {
-        let cell = then
-            .disk
-            .cells
-            .iter()
-            .zip(&now.disk.cells)
-            .position(|(t, n)| t != n);
-        let what = match cell {
-            Some(cell) => format!("conditions of cell {cell}"),
-            None => "cells of the disk".to_string(),
-        };
-        let counted = |header: &RunHeader| match cell {
-            Some(cell) => conditions_in_words(header, cell),
-            None => format!("{} cells", header.disk.cells.len()),
-        };
-        found.push(differs(what, &counted(then), &counted(now)));
-    }
-    // The same inputs expanded otherwise: only an engine changed without a new version does that.
-    let axes = |header: &RunHeader| {
-        let caution_count = header.caution_names.len();
-        (
-            header.species.clone(),
-            header.times_yr.clone(),
-            caution_count,
-        )
-    };
-    if found.is_empty() && axes(then) != axes(now) {
-        let counted = |header: &RunHeader| {
-            format!(
-                "{} species, {} times",
-                header.species.len(),
-                header.times_yr.len()
-            )
-        };
-        found.push(differs(
-            "expanded inputs".into(),
-            &counted(then),
-            &counted(now),
-        ));
-    }
-    found
-}
-
-/// The first lines that differ, 1-based; a missing line reads as empty.
-fn differing_lines<'a>(
-    then: &'a str,
-    now: &'a str,
-) -> impl Iterator<Item = (usize, &'a str, &'a str)> {
-    let count = then.lines().count().max(now.lines().count());
-    let (mut then, mut now) = (then.lines(), now.lines());
-    (1..=count)
-        .map(move |line| (line, then.next().unwrap_or(""), now.next().unwrap_or("")))
-        .filter(|(_, then, now)| then != now)
-        .take(LINES_SHOWN)
-}
-
-fn conditions_in_words(header: &RunHeader, cell: usize) -> String {
-    let Some(cell) = header.disk.cells.get(cell) else {
-        return "none".to_string();
-    };
-    format!(
-        "{} au, {} au, n_H {} cm^-3, T_gas {} K, T_dust {} K, {:?}",
-        cell.radius, cell.height, cell.n_h, cell.t_gas, cell.t_dust, cell.light
-    )
 }
 
 #[cfg(test)]

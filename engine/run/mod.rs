@@ -5,11 +5,13 @@
 
 pub mod balance;
 pub mod cell;
+mod frame;
 pub mod grid;
 pub mod journal;
 pub mod prepare;
 pub mod progress;
 pub mod record;
+mod same_run;
 pub mod signals;
 pub mod workers;
 

@@ -42,11 +42,11 @@ impl Progress {
     pub fn start(bars: &MultiProgress, total: usize, before: usize) -> Self {
         let on_terminal = !bars.is_hidden();
         let bar = bars.add(ProgressBar::new(total as u64).with_position(before as u64));
-        let shape = "{bar:32} {pos}/{len} cells  {per_sec}  {eta} left  {msg}";
+        // The rate and the time left are ours: the bar's own would count the cells of an earlier run.
+        let shape = "{bar:32} {elapsed}  {msg}";
         if let Ok(style) = ProgressStyle::with_template(shape) {
             bar.set_style(style);
         }
-        bar.reset_eta();
         if on_terminal {
             // Cells may take minutes: the time must go on between them.
             bar.enable_steady_tick(Duration::from_millis(500));
@@ -73,9 +73,9 @@ impl Progress {
         self.tally.now += 1;
         if status == CellStatus::Failed {
             self.tally.failed += 1;
-            self.bar
-                .set_message(format!("{} failed", self.tally.failed));
         }
+        self.bar
+            .set_message(self.tally.line(self.tally.started.elapsed()));
         self.bar.inc(1);
         let done = self.tally.before + self.tally.now;
         let share = LINES_PER_RUN * done / self.tally.total.max(1);
@@ -105,7 +105,10 @@ impl Tally {
         let seconds = elapsed.as_secs_f64();
         if self.now > 0 && seconds > 0.0 {
             let rate = self.now as f64 / seconds;
-            line.push_str(&format!(", {rate:.3} cells/s"));
+            line.push_str(&match rate {
+                1.0.. => format!(", {rate:.1} cells/s"),
+                _ => format!(", {:.1} s per cell", 1.0 / rate),
+            });
             if done < self.total {
                 let left = (self.total - done) as f64 / rate;
                 line.push_str(&format!(", {} left", in_words(left)));
@@ -142,7 +145,7 @@ mod tests {
         };
         assert_eq!(
             tally.line(Duration::from_secs(100)),
-            "70 of 100 cells, 1 failed, 0.100 cells/s, 5 min 0 s left"
+            "70 of 100 cells, 1 failed, 10.0 s per cell, 5 min 0 s left"
         );
         let whole = Tally {
             now: 40,
@@ -151,7 +154,7 @@ mod tests {
         };
         assert_eq!(
             whole.line(Duration::from_secs(20)),
-            "100 of 100 cells, 2.000 cells/s"
+            "100 of 100 cells, 2.0 cells/s"
         );
         let idle = Tally {
             now: 0,

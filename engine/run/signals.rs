@@ -61,3 +61,35 @@ impl StopFlag {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Set in the child process that plays the run.
+    const CHILD: &str = "FROSTCLOCK_TEST_SIGNALLED_CHILD";
+
+    /// If it failed, a first Ctrl-C would kill the run instead of asking it to stop, or a second one
+    /// would not end it.
+    #[test]
+    fn the_first_signal_asks_and_the_second_ends() {
+        if std::env::var_os(CHILD).is_some() {
+            let stop = StopFlag::new();
+            stop.listen().expect("listens");
+            assert!(!stop.is_raised() && stop.signal().is_none());
+            signal_hook::low_level::raise(SIGTERM).expect("raises");
+            assert!(stop.is_raised());
+            assert_eq!(stop.signal(), Some(SIGTERM));
+            signal_hook::low_level::raise(SIGINT).expect("raises");
+            unreachable!("the second signal did not end the process");
+        }
+        let test = "run::signals::tests::the_first_signal_asks_and_the_second_ends";
+        let child = std::process::Command::new(std::env::current_exe().expect("this test"))
+            .args(["--exact", test])
+            .env(CHILD, "1")
+            .output()
+            .expect("runs");
+        let said = String::from_utf8_lossy(&child.stdout);
+        assert_eq!(child.status.code(), Some(130), "the child said: {said}");
+    }
+}

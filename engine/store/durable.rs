@@ -5,6 +5,7 @@
 
 use std::ffi::OsString;
 use std::fs::{File, OpenOptions};
+use std::io;
 use std::path::{Path, PathBuf};
 
 use crate::errors::Failure;
@@ -51,22 +52,28 @@ pub struct PartFile {
 }
 
 impl PartFile {
-    /// Creates `<target>.part-<process>`, which must not exist yet.
+    /// Creates `<target>.part-<process>-<number>`. The number steps over what killed processes left:
+    /// in a container every process has the same few identifiers.
     pub fn beside(target: &Path) -> Result<Self, Failure> {
-        let mut name = OsString::from(target.as_os_str());
-        name.push(format!(".part-{}", std::process::id()));
-        let part = PathBuf::from(name);
-        let handle = OpenOptions::new()
-            .write(true)
-            .create_new(true)
-            .open(&part)
-            .map_err(|cause| Failure::machine("creating it", &part, cause))?;
-        Ok(PartFile {
-            part,
-            target: target.to_path_buf(),
-            handle,
-            published: false,
-        })
+        let mut number = 0;
+        loop {
+            let mut name = OsString::from(target.as_os_str());
+            name.push(format!(".part-{}-{number}", std::process::id()));
+            let part = PathBuf::from(name);
+            match OpenOptions::new().write(true).create_new(true).open(&part) {
+                Ok(handle) => {
+                    let target = target.to_path_buf();
+                    return Ok(PartFile {
+                        part,
+                        target,
+                        handle,
+                        published: false,
+                    });
+                }
+                Err(cause) if cause.kind() == io::ErrorKind::AlreadyExists => number += 1,
+                Err(cause) => return Err(Failure::machine("creating it", &part, cause)),
+            }
+        }
     }
 
     /// Where to write.
@@ -88,9 +95,12 @@ impl PartFile {
 
 impl Drop for PartFile {
     fn drop(&mut self) {
-        if !self.published
-            && let Err(cause) = std::fs::remove_file(&self.part)
-        {
+        if self.published {
+            return;
+        }
+        // Emptied first: a handle that HDF5 still holds would keep the blocks of a removed file.
+        let emptied = self.handle.set_len(0);
+        if let Err(cause) = emptied.and_then(|()| std::fs::remove_file(&self.part)) {
             log::warn!("{}: could not be removed: {cause}", self.part.display());
         }
     }

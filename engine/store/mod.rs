@@ -10,15 +10,24 @@
 
 pub mod assemble;
 pub mod bytes;
+mod collected;
 pub mod durable;
 pub mod header;
+mod layout;
 mod put;
 mod read;
 mod scales;
 
+use crate::errors::Failure;
+use crate::run::record::CellRecord;
+
 pub use assemble::assemble;
 pub use header::{RunHeader, SpeciesInfo, Tolerances};
 pub use read::{RunFile, open};
+
+/// Where the records of [`assemble`] come from: called once per cell, in ascending order; None where
+/// there is none.
+pub type RecordSource<'a> = dyn FnMut(usize) -> Result<Option<CellRecord>, Failure> + 'a;
 
 /// Root attribute by which a run file is known, and the version of its layout.
 const LAYOUT_ATTRIBUTE: &str = "frostclock_run_layout";

@@ -63,10 +63,29 @@ fn text_fingerprint(values: &[VarLenUnicode]) -> u32 {
 /// How to read a dataset back for its fingerprint.
 type Again = fn(&Dataset) -> hdf5::Result<u32>;
 
+/// A dataset that the reopened file must hold.
+#[derive(Debug)]
+pub struct Kept {
+    path: String,
+    fingerprint: u32,
+    again: Again,
+}
+
+impl Kept {
+    /// Compares what `file` holds, bit for bit.
+    pub fn check(&self, file: &File) -> hdf5::Result<()> {
+        if (self.again)(&file.dataset(&self.path)?)? == self.fingerprint {
+            Ok(())
+        } else {
+            Err(format!("{} does not hold what was written", self.path).into())
+        }
+    }
+}
+
 /// Puts datasets into a file and remembers their fingerprints.
 pub struct Putter {
     pub file: File,
-    kept: Vec<(String, u32, Again)>,
+    kept: Vec<Kept>,
 }
 
 impl Putter {
@@ -77,9 +96,17 @@ impl Putter {
         }
     }
 
-    /// What the reopened file must hold: path, fingerprint and how to take it again.
-    pub fn kept(&self) -> &[(String, u32, Again)] {
-        &self.kept
+    /// The file, and what it must hold when reopened.
+    pub fn finish(self) -> (File, Vec<Kept>) {
+        (self.file, self.kept)
+    }
+
+    fn keep(&mut self, dataset: &Dataset, fingerprint: u32, again: Again) {
+        self.kept.push(Kept {
+            path: dataset.name(),
+            fingerprint,
+            again,
+        });
     }
 
     /// A new group whose links keep their order.
@@ -109,8 +136,7 @@ impl Putter {
             .create(label.name)?;
         dataset.write_raw(values)?;
         describe(&dataset, label, scales)?;
-        let again: Again = |dataset| Ok(fingerprint(&dataset.read_raw::<T>()?));
-        self.kept.push((dataset.name(), fingerprint(values), again));
+        self.keep(&dataset, fingerprint(values), numbers_again::<T>);
         Ok(dataset)
     }
 
@@ -130,8 +156,7 @@ impl Putter {
         };
         dataset.write_raw(&values)?;
         describe(&dataset, label, scale.as_slice())?;
-        self.kept
-            .push((dataset.name(), text_fingerprint(&values), text_again));
+        self.keep(&dataset, text_fingerprint(&values), text_again);
         Ok(dataset)
     }
 
@@ -149,8 +174,7 @@ impl Putter {
             .shape([values.len()])
             .create(label.name)?;
         dataset.write_raw(&values)?;
-        self.kept
-            .push((dataset.name(), text_fingerprint(&values), text_again));
+        self.keep(&dataset, text_fingerprint(&values), text_again);
         as_scale(dataset, label)
     }
 
@@ -167,10 +191,13 @@ impl Putter {
             .shape([values.len()])
             .create(label.name)?;
         dataset.write_raw(values)?;
-        let again: Again = |dataset| Ok(fingerprint(&dataset.read_raw::<T>()?));
-        self.kept.push((dataset.name(), fingerprint(values), again));
+        self.keep(&dataset, fingerprint(values), numbers_again::<T>);
         as_scale(dataset, label)
     }
+}
+
+fn numbers_again<T: Number>(dataset: &Dataset) -> hdf5::Result<u32> {
+    Ok(fingerprint(&dataset.read_raw::<T>()?))
 }
 
 fn text_again(dataset: &Dataset) -> hdf5::Result<u32> {

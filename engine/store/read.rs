@@ -9,13 +9,19 @@ use std::path::{Path, PathBuf};
 use hdf5::types::VarLenUnicode;
 use hdf5::{Dataset, File, Group, H5Type, Location, Selection};
 
-use super::assemble::BALANCE_LABELS;
 use super::header::{CELL_NUMBERS, PHASES, RunHeader, SpeciesInfo, Tolerances, cell_from};
+use super::layout::BALANCE_LABELS;
 use super::{LAYOUT_ATTRIBUTE, LAYOUT_VERSION};
 use crate::disk::conditions::{Disk, FieldKind, Light};
 use crate::errors::{Failure, InputError};
 use crate::run::journal;
 use crate::run::record::{Balance, COUNTER_NAMES, CellStatus, Work};
+
+/// Cache for chunks of abundances. HDF5's default of 1 MB holds four: reading the histories of
+/// neighbouring cells one after the other would inflate each chunk again and again.
+const CACHE_BYTES: usize = 32 << 20;
+/// A prime, well above the number of chunks that fit.
+const CACHE_SLOTS: usize = 4099;
 
 /// A run, opened for reading.
 #[derive(Debug)]
@@ -84,7 +90,10 @@ fn open_run(path: &Path) -> Result<File, Failure> {
     if &start != b"\x89HDF\r\n\x1a\n" {
         return Err(wrong("no HDF5 file", "a run file of frostclock"));
     }
-    let file = File::open(path).map_err(|cause| {
+    let opened = File::with_options()
+        .with_fapl(|plist| plist.chunk_cache(CACHE_SLOTS, CACHE_BYTES, 0.75))
+        .open(path);
+    let file = opened.map_err(|cause| {
         wrong(
             &format!("an HDF5 file that does not open ({cause})"),
             "a whole one",
