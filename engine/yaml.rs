@@ -56,11 +56,23 @@ impl Positions {
 
 /// Reads one YAML document of type `T` from `text`, the content of the file `path`.
 pub fn read<T: DeserializeOwned>(path: &Path, text: &str) -> Result<(T, Positions), InputError> {
-    let positions = Walk::over(path, text)?;
-    match serde_yaml::from_str(text) {
-        Ok(value) => Ok((value, positions)),
-        Err(error) => Err(plain_words::explain(path, &error, &positions)),
-    }
+    let positions = positions(path, text)?;
+    let value = fill(path, text, &positions)?;
+    Ok((value, positions))
+}
+
+/// The first pass alone: where everything stands, for a text whose type is not known yet.
+pub fn positions(path: &Path, text: &str) -> Result<Positions, InputError> {
+    Walk::over(path, text)
+}
+
+/// The second pass alone.
+pub fn fill<T: DeserializeOwned>(
+    path: &Path,
+    text: &str,
+    positions: &Positions,
+) -> Result<T, InputError> {
+    serde_yaml::from_str(text).map_err(|error| plain_words::explain(path, &error, positions))
 }
 
 /// A map or list the first pass is inside of.
@@ -357,7 +369,7 @@ mod tests {
         count: Option<u32>,
     }
 
-    #[derive(Debug, Deserialize)]
+    #[derive(Debug, PartialEq, Deserialize)]
     #[serde(rename_all = "snake_case")]
     enum Mood {
         Good,
@@ -387,6 +399,7 @@ mod tests {
         assert_eq!(file.lines[0].name, "NO");
         assert_eq!(file.lines[0].value, 1e-10);
         assert_eq!(file.table["H2O"], 2.5);
+        assert_eq!((file.title.as_str(), file.lines[1].value), ("t", 2.0));
         for (path, line) in [
             ("title", 2),
             ("lines", 3),
@@ -590,10 +603,15 @@ mod tests {
     // Quoting must be enough to write any name, and 0 must stay a number.
     #[test]
     fn quoted_scalars_and_zeros_pass() {
-        let text = "title: \"~\"\ntable: {a: 0, b: 0.0, c: 0.0e-5, d: -0.5}\nlines: [{name: \"010\"}, {name: 'null'}]";
+        let text = "title: \"~\"\ntable: {a: 0, b: 0.0, c: 0.0e-5, d: -0.5}\nlines: [{name: \"010\", range: [0, 1], mood: bad, count: 2}, {name: 'null'}]";
         let (file, _) = read_file(text).unwrap();
         assert_eq!(file.title, "~");
-        assert_eq!(file.lines[0].name, "010");
+        let line = &file.lines[0];
+        assert_eq!(
+            (line.name.as_str(), line.range, line.count),
+            ("010", Some([0.0, 1.0]), Some(2))
+        );
+        assert_eq!(line.mood, Some(Mood::Bad));
         assert_eq!(file.table["a"], 0.0);
     }
 

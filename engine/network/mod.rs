@@ -1,7 +1,20 @@
 //! Owns the reaction network: the file's layout, its reading and checks, and the expansion into
 //! every reaction that runs.
 //!
-//! It never evaluates a rate.
+//! It never evaluates the rate of a run: `rates` does.
 
+mod check;
+pub mod expand;
+pub mod findings;
+pub mod groups;
 pub mod layout;
+pub mod limits;
 pub mod model;
+pub mod names;
+pub mod read;
+pub mod roster;
+mod warn;
+
+pub use expand::expand;
+pub use findings::{Warning, WarningKind};
+pub use read::{Network, read};

@@ -4,6 +4,7 @@
 //! It never reads text and never evaluates a rate: `read` and `expand` make it, `rates` uses it.
 
 use super::layout::{Below, ShieldingLaw, Standing};
+use std::collections::BTreeMap;
 
 /// Index of a species in [`Chemistry::species`], which is also its place in a state vector.
 pub type SpeciesId = usize;
@@ -124,8 +125,29 @@ pub struct Reaction {
     /// Multiplicative 1-sigma uncertainty.
     pub within: f64,
     pub standing: Standing,
-    /// Key into the file's sources.
+    /// Key into the file's sources; empty for what follows from kinetic theory alone.
     pub source: String,
+}
+
+impl Reaction {
+    /// Net change of every species that changes, in order of places, with that of the ice total
+    /// (at `ice_total`): how many adsorbed molecules are gained less how many are lost.
+    pub fn net_change(
+        &self,
+        ice_total: Option<SpeciesId>,
+        species: &[Species],
+    ) -> Vec<(SpeciesId, i32)> {
+        let mut net: BTreeMap<SpeciesId, i32> = BTreeMap::new();
+        for (side, sign) in [(&self.consumed, -1), (&self.products, 1)] {
+            for id in side {
+                *net.entry(*id).or_insert(0) += sign;
+                if let (Some(total), Phase::Ice) = (ice_total, species[*id].phase) {
+                    *net.entry(total).or_insert(0) += sign;
+                }
+            }
+        }
+        net.into_iter().filter(|(_, change)| *change != 0).collect()
+    }
 }
 
 /// A shielding law with its data.
@@ -201,5 +223,10 @@ impl Chemistry {
     /// The place of a species by name.
     pub fn find(&self, name: &str) -> Option<SpeciesId> {
         self.species.iter().position(|s| s.name == name)
+    }
+
+    /// The place of the ice total, if there are ices.
+    pub fn ice_total(&self) -> Option<SpeciesId> {
+        self.species.iter().position(|s| s.phase == Phase::IceTotal)
     }
 }
