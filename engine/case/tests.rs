@@ -199,3 +199,56 @@ fn the_cases_of_the_repository_are_sound() {
         );
     }
 }
+
+/// The built-in network must fit what cases may say of it: every composition starts neutral, with
+/// one hydrogen nucleus per hydrogen nucleus, and Tirune's columns and spectra are known.
+#[test]
+fn the_built_in_network_fits_the_cases() {
+    let folder = Path::new(env!("CARGO_MANIFEST_DIR")).join("cases");
+    let case = open(&folder.join("tirune.yaml")).unwrap();
+    let path = Path::new("standard");
+    let network = crate::network::read::read(path, &case.network_text).unwrap();
+    let chemistry = crate::network::expand::expand(&network, &case.grains).unwrap();
+    let disk = case.disk_for(&chemistry).unwrap();
+    let first = &disk.cells[0].light[0];
+    assert_eq!(first.columns.len(), chemistry.column_species.len());
+    assert!(
+        first.columns[0] > 1.0e25,
+        "H2 first: {:e}",
+        first.columns[0]
+    );
+
+    let all = compositions(&network.file);
+    assert!(!all.is_empty());
+    for (name, _) in &all {
+        let kind = StartKind::Composition(name.clone());
+        let choice = StartChoice {
+            kind,
+            ..case.start.clone()
+        };
+        let dust = disk.cells[0].dust_abundance();
+        let state = start_state(&choice, &all, &chemistry, dust).unwrap();
+        assert_eq!(
+            start_notes(&chemistry, &state),
+            Vec::<String>::new(),
+            "{name}"
+        );
+        let charge: f64 = chemistry
+            .species
+            .iter()
+            .zip(&state)
+            .map(|(s, x)| f64::from(s.charge) * x)
+            .sum();
+        assert!(charge.abs() < 1e-18, "{name}: charge {charge:e}");
+    }
+
+    let mut odd = case.clone();
+    odd.disk.fields[2].spectrum = "candle".to_string();
+    let error = odd.disk_for(&chemistry).unwrap_err();
+    assert!(
+        error
+            .to_string()
+            .contains("`candle`, which the network does not know"),
+        "{error}"
+    );
+}

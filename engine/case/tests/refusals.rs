@@ -178,6 +178,20 @@ fn wrong_cases_are_refused_where_they_are_wrong() {
             "3 keV",
         ),
         (
+            "to: 100 au, count: 3",
+            "to: 1 pc, count: 3",
+            4,
+            "disk.recipe",
+            "where there is gas",
+        ),
+        (
+            "count: 3}",
+            "count: 300000}",
+            4,
+            "disk.recipe",
+            "at most 1000000 cells",
+        ),
+        (
             "up_to: 6",
             "upto: 6",
             9,
