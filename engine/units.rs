@@ -265,7 +265,13 @@ fn number_length(text: &str) -> usize {
 /// A number as text that YAML 1.2 and CSV readers take for a float and that reads back the same
 /// bits: `1.0e-17`, `0.5`, `3.0`.
 pub fn number_text(value: f64) -> String {
-    let text = format!("{value:?}");
+    // Plain digits where a person can count them.
+    let plain = value == 0.0 || (1.0e-4..1.0e6).contains(&value.abs());
+    let text = if plain {
+        format!("{value:?}")
+    } else {
+        format!("{value:e}")
+    };
     match text.split_once('e') {
         Some((mantissa, exponent)) if !mantissa.contains('.') => format!("{mantissa}.0e{exponent}"),
         _ => text,

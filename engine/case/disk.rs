@@ -11,7 +11,7 @@ use crate::disk::conditions::REFERENCE_DUST_AREA;
 use crate::disk::ionisation::{Hardness, SOLAR_NUCLIDES};
 use crate::disk::light::{Sources, Star};
 use crate::disk::recipe::{Recipe, Warmth};
-use crate::disk::{Disk, FieldKind, table};
+use crate::disk::{Conditions, Disk, FieldKind, table};
 use crate::errors::Failure;
 use crate::units::{Dimension, number_text};
 
@@ -37,8 +37,8 @@ const STEEPNESS: Bounds = Bounds {
     allows: |x| x > 0.0 && x <= 10.0,
     words: "above 0, at most 10",
 };
-/// More than any machine holds the results of.
-const MOST_RADII: u32 = 10_000;
+/// More cells than any machine holds the results of.
+const MOST_CELLS: u32 = 1_000_000;
 
 pub(super) struct Reading {
     pub(super) disk: Disk,
@@ -95,6 +95,12 @@ pub(super) fn read(
                     .to_string(),
             ];
             let disk = recipe.build(&assumed);
+            if let Some(cell) = disk.cells.iter().find(|cell| !has_gas(cell)) {
+                let place = format!("{:.4} au, height {:.4} au", cell.radius, cell.height);
+                let found = format!("a density of {:e} cm^-3 at {place}", cell.n_h);
+                check.error("disk.recipe", found, "radii and heights where there is gas");
+                return Ok(None);
+            }
             let resolved = format!("disk:\n{recipe_text}{assumed_text}");
             Ok(Some(Reading {
                 disk,
@@ -113,6 +119,12 @@ pub(super) fn read(
             Ok(None)
         }
     }
+}
+
+/// Whether a recipe's cell can be computed: far beyond the cutoff nothing is left.
+fn has_gas(cell: &Conditions) -> bool {
+    let values = [cell.n_h, cell.t_gas, cell.zeta_cosmic, cell.zeta_xray];
+    cell.n_h > 0.0 && values.iter().all(|value| value.is_finite())
 }
 
 fn assumed_columns(check: &mut Checker, block: &DiskBlock) -> (Vec<(String, f64)>, String) {
@@ -235,7 +247,7 @@ fn read_recipe(check: &mut Checker, block: &RecipeBlock) -> (Recipe, String) {
 
     let from = check.required(&key("radii.from"), &block.radii.from, Length, POSITIVE);
     let to = check.required(&key("radii.to"), &block.radii.to, Length, POSITIVE);
-    let radii = check.count(&key("radii.count"), &block.radii.count, 1, MOST_RADII);
+    let radii = check.count(&key("radii.count"), &block.radii.count, 1, MOST_CELLS);
     if radii > 1 && to.value <= from.value {
         let expected = format!("a radius beyond `{}`", from.text);
         check.error(&key("radii.to"), format!("`{}`", to.text), expected);
@@ -246,7 +258,12 @@ fn read_recipe(check: &mut Checker, block: &RecipeBlock) -> (Recipe, String) {
         Number,
         SCALE_HEIGHTS,
     );
-    let heights = check.count(&key("heights.count"), &block.heights.count, 1, MOST_RADII);
+    let heights = check.count(&key("heights.count"), &block.heights.count, 1, MOST_CELLS);
+    let cells = u64::from(radii) * u64::from(heights);
+    if cells > u64::from(MOST_CELLS) {
+        let expected = format!("at most {MOST_CELLS} cells");
+        check.error("disk.recipe", format!("{cells} cells"), expected);
+    }
 
     let (sources, light_text) = light(check, &block.light);
     let (ionisation, ionisation_text) = ionisation(check, &block.ionisation);

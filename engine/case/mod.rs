@@ -13,7 +13,9 @@ mod options;
 mod start;
 
 pub use networks::built_in_network;
-pub use start::{GivenAbundance, StartChoice, StartKind, element_totals, start_notes, start_state};
+pub use start::{
+    GivenAbundance, StartChoice, StartKind, compositions, element_totals, start_notes, start_state,
+};
 
 use crate::disk::{Disk, write_table};
 use crate::errors::{Failure, InputError};

@@ -6,6 +6,7 @@ use super::Block;
 use super::checker::{Checker, NOT_NEGATIVE, quoted};
 use super::layout::StartBlock;
 use crate::errors::InputError;
+use crate::network::layout::{CompositionLine, NetworkFile};
 use crate::network::model::{Chemistry, Phase};
 use crate::units::{Dimension, number_text};
 use std::collections::BTreeMap;
@@ -91,6 +92,12 @@ pub(super) fn read(check: &mut Checker, block: &StartBlock) -> Option<Block<Star
             None
         }
     }
+}
+
+/// The named compositions of a network file, as [`start_state`] takes them.
+pub fn compositions(file: &NetworkFile) -> Vec<(String, BTreeMap<String, f64>)> {
+    let pair = |line: &CompositionLine| (line.name.clone(), line.abundances.clone());
+    file.compositions.iter().map(pair).collect()
 }
 
 /// The state a cell with `dust` grains per hydrogen nucleus starts in, in the order of

@@ -10,9 +10,9 @@ use std::path::Path;
 
 /// Mean abundances N(X)/N_H towards the light where no column is given.
 ///
-/// H2: all hydrogen molecular. CO: half of the carbon that is not in grains. N2: a third of the
-/// nitrogen. C: a tenth of that of CO and more, about what a surface layer holds. They err on the
-/// side of too much shielding above the layer where each molecule begins.
+/// H2: all hydrogen molecular. CO: two fifths of a carbon abundance of 1.2e-4. N2: a quarter of a
+/// nitrogen abundance of 7.6e-5. C: a twelfth of the carbon, about what a surface layer holds. Own
+/// choices; they err on the side of too much shielding above the layer where each begins.
 pub const ASSUMED: [(&str, f64); 4] = [("H2", 0.5), ("CO", 5.0e-5), ("N2", 1.0e-5), ("C", 1.0e-5)];
 
 /// [`ASSUMED`] with the values a case gives in its place or adds (in the order given).

@@ -264,15 +264,12 @@ pub fn write_table(disk: &Disk, mut out: impl Write) -> io::Result<()> {
                 .iter()
                 .map(|species| format!("N_{species}_{name} [cm^-2]")),
         );
-        for (s, species) in disk
+        let shields = disk
             .column_species
             .iter()
             .enumerate()
-            .filter(|&(s, _)| given(f, s))
-        {
-            let _ = s;
-            head.push(format!("shield_{species}_{name} [1]"));
-        }
+            .filter(|&(s, _)| given(f, s));
+        head.extend(shields.map(|(_, species)| format!("shield_{species}_{name} [1]")));
     }
     head.extend(
         [
