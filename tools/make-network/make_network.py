@@ -10,7 +10,8 @@ the basis of networks/NOTES.md.
 
 Why it exists: to rebuild networks/standard.yaml when the fact tables change. Once somebody has edited
 networks/standard.yaml by hand, that file is the authority and this script only shows, by a diff, what
-the tables would say. Python 3 standard library only; citations are handled in citations.py beside it.
+the tables would say. Python 3 standard library only. Beside it: citations.py makes the source keys,
+spectra.py estimates photo rates in fields where the tables give none, yaml_text.py writes values.
 """
 import collections
 import csv
@@ -20,81 +21,22 @@ import re
 import sys
 
 from citations import Sources
+from spectra import EV, FIELDS, Estimate
+from yaml_text import flow, noted, quoted, real, scalar, shorten, whole
 
-EV = 96.485               # kJ/mol per eV
 GRAIN_LIMIT_EV = 3.0      # recombination channels that release less are closed on grains
 JOINT_TOLERANCE = 0.05    # relative jump between two temperature pieces that is reported
-FIELDS = (("black_body_4000K", "k0_bb4000"), ("black_body_10000K", "k0_bb10000"))
 SHIELDED = {("H2", "dissociation"): "H2", ("CO", "dissociation"): "CO",
             ("N2", "dissociation"): "N2", ("C", "ionisation"): "C"}
 BELOW = {"extrapolate": "extend", "freeze": "hold", "zero": "zero"}
 HOP_BARRIER = {"N": 400, "O": 750}      # K, measured: Minissale, Congiu & Dulieu 2016
-YAML_11_BOOLEANS = {"y", "n", "yes", "no", "on", "off", "true", "false", "null", "~"}
-
-# Words of the table notes that the layout itself already says, or that can be said shorter.
-SHORTER = [
-    ("M = all heavy colliders (H2, He, H); rate = k0[M]kinf/(k0[M]+kinf) with broadening Fc", ""),
-    ("rate = k[M][X], low-pressure limit, M = H2, He, H", "low-pressure limit"),
-    ("a in cm6 s-1", ""),
-    ("line process: multiply by the self-shielding function", "line process"),
-    ("line process: multiply by the table in co_shielding.csv", "line process"),
-    ("line process: self-shielding, see h2_shielding.md", "line process"),
-    ("branching after branching from", "branching from"),
-    ("300 K value kept, temperature dependence of dipole capture", "300 K value, slope of dipole capture"),
-    ("literature range not stated, taken as 300 K upward", "range not stated, taken as 300 K up"),
-    ("total agrees with the planetary-ion data set within 30 percent at 300 K", "two collections agree to 30 percent at 300 K"),
-    ("total agrees within 30 percent at 300 K with a second collection", "two collections agree to 30 percent at 300 K"),
-    ("reverse of the literature direction, from detailed balance", "reverse, from detailed balance"),
-    ("reverse of the listed exothermic reaction, from detailed balance", "reverse, from detailed balance"),
-]
 
 
-# ---------------------------------------------------------------- reading and writing
+# ---------------------------------------------------------------- reading
 
 def table(folder, name):
     with open(os.path.join(folder, name), encoding="utf8", newline="") as f:
         return list(csv.DictReader(line for line in f if not line.startswith("#")))
-
-
-def real(x):
-    """A float with a dot and a signed exponent: YAML 1.1 and 1.2 readers both take it for one."""
-    value = float(x)
-    if value == 0.0 or 1e-3 <= abs(value) < 1e6:
-        return repr(value)
-    text = next(t for t in ("%.*e" % (digits, value) for digits in range(1, 18)) if float(t) == value)
-    mantissa, _, exponent = text.partition("e")
-    return "%se%+d" % (mantissa, int(exponent))
-
-
-def whole(x):
-    """Integers without a dot, everything else as `real`: for temperatures and energies in K."""
-    return "%d" % float(x) if float(x) == int(float(x)) else real(x)
-
-
-def quoted(text):
-    return '"%s"' % text.replace("\\", "\\\\").replace('"', '\\"')
-
-
-def scalar(text):
-    """Plain where both YAML versions read a string, quoted elsewhere."""
-    if text.lower() in YAML_11_BOOLEANS or not re.fullmatch(r"[A-Za-z][A-Za-z0-9 +().>-]*", text):
-        return quoted(text)
-    return text
-
-
-def flow(pairs):
-    return "{" + ", ".join("%s: %s" % (k if "_" in k else scalar(k), v) for k, v in pairs if v is not None) + "}"
-
-
-def shorten(note):
-    for long, short in SHORTER:
-        note = note.replace(long, short)
-    return "; ".join(part for part in re.split(r";\s*", note) if part)
-
-
-def noted(tag, note):
-    note = shorten(note)
-    return quoted("%s: %s" % (tag, note) if tag and note else tag or note) if tag or note else None
 
 
 def same_change(reactants, products):
@@ -190,7 +132,7 @@ def check_joints(parts, report):
 
 # ---------------------------------------------------------------- light and energetic particles
 
-def light_lines(photo, fields, sources):
+def light_lines(photo, fields, estimate, sources, report):
     total = collections.Counter()
     for row in photo:
         total[row["species"], row["process"]] += float(row["k0_s-1"])
@@ -198,15 +140,21 @@ def light_lines(photo, fields, sources):
     lines = []
     for row in photo:
         which = row["species"], row["process"]
-        share = float(row["k0_s-1"]) / total[which]
-        spectra = None
+        rate, note = float(row["k0_s-1"]), row["note"]
         if which in other:
-            spectra = flow([(name, real("%.4g" % (share * float(other[which][column])))) for name, column in FIELDS])
+            share = rate / total[which]
+            spectra = [(name, real("%.4g" % (share * float(other[which][column])))) for name, _, column in FIELDS]
+        else:
+            ratios, words = estimate.of(*which, float(row["gamma"]))
+            spectra = [(name, real("%.3g" % (rate * ratio))) for name, ratio in ratios]
+            note = "; ".join(x for x in (note, words) if x)
+            report["spectra estimated"].append("%s %s: %s: %s of the Draine rate" % (
+                *which, words, ", ".join("%.3g" % ratio for _, ratio in ratios)))
         lines.append(flow([
             ("change", scalar("%s -> %s" % (row["species"], row["products"]))), ("rate", real(row["k0_s-1"])),
-            ("extinction", real(row["gamma"])), ("shield", SHIELDED.get(which)), ("spectra", spectra),
+            ("extinction", real(row["gamma"])), ("shield", SHIELDED.get(which)), ("spectra", flow(spectra)),
             ("within", real(row["factor"])), ("standing", row["confidence"]),
-            ("source", sources.key(row["source"])), ("note", noted("class " + row["class"], row["note"]))]))
+            ("source", sources.key(row["source"])), ("note", noted("class " + row["class"], note))]))
     return lines
 
 
@@ -418,7 +366,8 @@ def main(folder, output):
               ("compositions", compositions(table(folder, "elements.csv"), table(folder, "initial_ices.csv"), sources)),
               ("shielding", shielding_lines(table(folder, "co_shielding.csv"), sources))]
     groups += gas_groups(gas, sources, report).items()
-    groups += [("light", light_lines(photo, table(folder, "photo_fields.csv"), sources)),
+    fields = table(folder, "photo_fields.csv")
+    groups += [("light", light_lines(photo, fields, Estimate(photo, fields, enthalpy), sources, report)),
                ("cosmic", cosmic_lines(cosmic, sources)),
                ("ices", ice_lines(frozen, binding, desorbed, sources, report)),
                ("surface", surface_lines(surface, sources, report))]
@@ -433,9 +382,9 @@ def main(folder, output):
         for key, text in sources.used():
             f.write("  %s: %s\n" % (key, quoted(text)))
         f.write("\nspectra:\n")
-        for name, _ in FIELDS:
-            f.write("  %s: %s\n" % (name, quoted("black body of %s K, its energy flux between 91.2 and 200 nm equal to that "
-                                                  "of the Draine field" % re.search(r"\d+", name).group())))
+        for name, T, _ in FIELDS:
+            f.write("  %s: %s\n" % (name, quoted("black body of %d K, its energy flux between 91.2 and 200 nm equal to that "
+                                                  "of the Draine field" % T)))
         for name, lines in groups:
             f.write("\n%s:\n" % name + "".join("  - %s\n" % line for line in lines))
         f.write("\ndust:\n  hydrogen_formation: %s\n  electron_sticking: 0.6\n  ion_sticking: 1.0\n  neutralisation:\n" % formation)
@@ -444,7 +393,8 @@ def main(folder, output):
     print("entries: " + ", ".join("%s %d" % (n, len(v)) for n, v in groups))
     print("fact rows in the gas groups: %s, total %d" % (dict(report["rows"]), sum(report["rows"].values())))
     print("sources: %d; neutralisation lines: %d" % (len(sources.used()), report["neutralisation lines"]))
-    for title in ("joints", "adds", "surface left out", "neutralisation", "near the limit"):
+    for title in ("joints", "adds", "surface left out", "neutralisation", "near the limit",
+                  "spectra estimated"):
         print("\n%s:" % title)
         for line in report[title]:
             print("  " + line)
