@@ -57,7 +57,11 @@ pub fn expand(network: &Network, options: &GrainOptions) -> Result<Chemistry, Ve
     for ice in 0..network.file.ices.len() {
         expansion.ice(ice);
     }
-    for entry in network.entries.iter().filter(|entry| entry.group == Group::Surface) {
+    for entry in network
+        .entries
+        .iter()
+        .filter(|entry| entry.group == Group::Surface)
+    {
         expansion.surface(entry);
     }
     Ok(Chemistry {
@@ -74,7 +78,9 @@ pub fn expand(network: &Network, options: &GrainOptions) -> Result<Chemistry, Ve
 /// The standard spectrum, then those of the file.
 fn spectra(network: &Network) -> Vec<String> {
     let standard = std::iter::once(STANDARD_SPECTRUM.to_string());
-    standard.chain(network.file.spectra.keys().cloned()).collect()
+    standard
+        .chain(network.file.spectra.keys().cloned())
+        .collect()
 }
 
 /// H2, then every other species whose column shields, in file order.
@@ -93,7 +99,10 @@ fn shielding(network: &Network, column_species: &[String]) -> Vec<Shielding> {
     let law = |line: &super::layout::ShieldingLine| Shielding {
         name: line.name.clone(),
         law: line.law,
-        column: column_species.iter().position(|name| *name == line.column).unwrap_or(0),
+        column: column_species
+            .iter()
+            .position(|name| *name == line.column)
+            .unwrap_or(0),
         h2: 0,
         log_column: line.log_column.clone(),
         log_h2: line.log_h2.clone(),
@@ -135,13 +144,26 @@ impl<'a> Expansion<'a> {
             species.push(ice_total());
         }
         let (reactions, groups) = (Vec::new(), HashMap::new());
-        Expansion { network, options, species, reactions, groups, dust }
+        Expansion {
+            network,
+            options,
+            species,
+            reactions,
+            groups,
+            dust,
+        }
     }
 
     /// State places of roster places.
     fn ids(&self, places: &[usize]) -> Vec<SpeciesId> {
         let gas = self.network.roster.gas;
-        let id = |place: &usize| if *place < gas { *place } else { *place + self.dust };
+        let id = |place: &usize| {
+            if *place < gas {
+                *place
+            } else {
+                *place + self.dust
+            }
+        };
         places.iter().map(id).collect()
     }
 
@@ -174,7 +196,10 @@ impl<'a> Expansion<'a> {
         let mut key = reactants.clone();
         key.sort_unstable();
         let next = self.groups.len();
-        let group = *self.groups.entry((std::mem::discriminant(&cause), key)).or_insert(next);
+        let group = *self
+            .groups
+            .entry((std::mem::discriminant(&cause), key))
+            .or_insert(next);
         self.reactions.push(Reaction {
             change,
             reactants,
@@ -192,7 +217,10 @@ impl<'a> Expansion<'a> {
     /// A reaction written in the file, other than on surfaces.
     fn written(&mut self, entry: &Entry) {
         let file = &self.network.file;
-        let range = |valid, below: Option<Below>| Range { valid, below: below.unwrap_or(Below::Extend) };
+        let range = |valid, below: Option<Below>| Range {
+            valid,
+            below: below.unwrap_or(Below::Extend),
+        };
         let below = |below: Option<Below>| below.unwrap_or(Below::Extend);
         // Every line type carries these three; only the cause differs.
         macro_rules! origin {
@@ -207,42 +235,85 @@ impl<'a> Expansion<'a> {
         }
         let (cause, origin) = match entry.group {
             Group::Gas | Group::ThreeBody => {
-                let lines = if entry.group == Group::Gas { &file.gas } else { &file.three_body };
+                let lines = if entry.group == Group::Gas {
+                    &file.gas
+                } else {
+                    &file.three_body
+                };
                 let line = &lines[entry.index];
                 let pieces = groups::pieces(line);
-                (Cause::PowerLaw { pieces, below: below(line.below) }, origin!(line))
+                (
+                    Cause::PowerLaw {
+                        pieces,
+                        below: below(line.below),
+                    },
+                    origin!(line),
+                )
             }
             Group::ThirdBody => {
                 let line = &file.third_body[entry.index];
                 let pieces = groups::pieces(line);
-                (Cause::ThirdBody { pieces, below: below(line.below) }, origin!(line))
+                (
+                    Cause::ThirdBody {
+                        pieces,
+                        below: below(line.below),
+                    },
+                    origin!(line),
+                )
             }
             Group::Capture => {
                 let line = &file.capture[entry.index];
                 let range = range(line.valid, line.below);
                 let (langevin, x_300k) = (line.langevin, line.x_300k);
-                (Cause::Capture { langevin, x_300k, range }, origin!(line))
+                (
+                    Cause::Capture {
+                        langevin,
+                        x_300k,
+                        range,
+                    },
+                    origin!(line),
+                )
             }
             Group::Falloff => {
                 let line = &file.falloff[entry.index];
                 let numbers = |l: &super::layout::LimitLine| [l.at_300k, l.slope, l.barrier];
                 let (low, high) = (numbers(&line.low), numbers(&line.high));
                 let range = range(line.valid, line.below);
-                (Cause::Falloff { low, high, centre: line.centre, range }, origin!(line))
+                (
+                    Cause::Falloff {
+                        low,
+                        high,
+                        centre: line.centre,
+                        range,
+                    },
+                    origin!(line),
+                )
             }
             Group::Light => {
                 let line = &file.light[entry.index];
-                let others = file.spectra.keys().map(|name| line.spectra.get(name).copied());
+                let others = file
+                    .spectra
+                    .keys()
+                    .map(|name| line.spectra.get(name).copied());
                 let rates = std::iter::once(Some(line.rate)).chain(others).collect();
                 let named = |name: &String| file.shielding.iter().position(|s| s.name == *name);
                 let shield = line.shield.as_ref().and_then(named);
-                (Cause::Light { rates, extinction: line.extinction, shield }, origin!(line))
+                (
+                    Cause::Light {
+                        rates,
+                        extinction: line.extinction,
+                        shield,
+                    },
+                    origin!(line),
+                )
             }
             Group::Cosmic => {
                 let line = &file.cosmic[entry.index];
                 let cause = match (line.direct, line.secondary) {
                     (Some(value), _) => Cause::Ionisation { value },
-                    (None, value) => Cause::SecondaryLight { value: value.unwrap_or(0.0) },
+                    (None, value) => Cause::SecondaryLight {
+                        value: value.unwrap_or(0.0),
+                    },
                 };
                 (cause, origin!(line))
             }
@@ -254,14 +325,22 @@ impl<'a> Expansion<'a> {
 
     fn hydrogen_formation(&mut self) {
         let network = self.network;
-        let Some(line) = network.file.dust.as_ref().and_then(|d| d.hydrogen_formation.as_ref()) else {
+        let Some(line) = network
+            .file
+            .dust
+            .as_ref()
+            .and_then(|d| d.hydrogen_formation.as_ref())
+        else {
             return;
         };
         let (Some(h), Some(h2)) = (network.roster.find("H"), network.roster.find("H2")) else {
             return;
         };
         let origin = dust_origin(network.line("dust.hydrogen_formation"), &line.source);
-        let cause = Cause::HydrogenFormation { at_100k: line.at_100k, slope: line.slope };
+        let cause = Cause::HydrogenFormation {
+            at_100k: line.at_100k,
+            slope: line.slope,
+        };
         let change = "H + H -> H2 (on dust)".to_string();
         self.push(change, vec![h], vec![h, h], vec![h2], cause, &origin);
     }
@@ -269,7 +348,9 @@ impl<'a> Expansion<'a> {
     /// Electrons, then every ion, on grains of every charge that can take theirs.
     fn charging(&mut self) {
         let network = self.network;
-        let Some(block) = &network.file.dust else { return };
+        let Some(block) = &network.file.dust else {
+            return;
+        };
         let n = self.options.charge_states;
         if let Some(electron) = network.roster.find("e-") {
             let origin = dust_origin(network.line("dust.electron_sticking"), "");
@@ -278,12 +359,21 @@ impl<'a> Expansion<'a> {
                 let cause = charging(sticking, &self.species[electron], grain, 1.0);
                 let consumed = vec![electron, self.dust_id(grain)];
                 let products = vec![self.dust_id(grain - 1)];
-                self.add(self.text(&consumed, &products), consumed, products, cause, &origin);
+                self.add(
+                    self.text(&consumed, &products),
+                    consumed,
+                    products,
+                    cause,
+                    &origin,
+                );
             }
         }
         let sticking = block.ion_sticking.unwrap_or(1.0);
-        for (i, (line, (ion, becomes))) in
-            block.neutralisation.iter().zip(&network.neutralisation).enumerate()
+        for (i, (line, (ion, becomes))) in block
+            .neutralisation
+            .iter()
+            .zip(&network.neutralisation)
+            .enumerate()
         {
             let place = network.line(&format!("dust.neutralisation[{i}]"));
             let origin = dust_origin(place, &line.source);
@@ -292,7 +382,13 @@ impl<'a> Expansion<'a> {
                 let consumed = vec![*ion, self.dust_id(grain)];
                 let mut products = becomes.clone();
                 products.push(self.dust_id(grain + 1));
-                self.add(self.text(&consumed, &products), consumed, products, cause, &origin);
+                self.add(
+                    self.text(&consumed, &products),
+                    consumed,
+                    products,
+                    cause,
+                    &origin,
+                );
             }
         }
     }
@@ -311,8 +407,17 @@ impl<'a> Expansion<'a> {
             source: "",
         };
         // Sticking is kinetic theory; the binding carries the uncertainty of the line.
-        let cause = Cause::Accretion { mass: binding.mass, hydrogen: line.species == "H" };
-        self.add(self.text(&[gas], &[ice]), vec![gas], vec![ice], cause, &origin);
+        let cause = Cause::Accretion {
+            mass: binding.mass,
+            hydrogen: line.species == "H",
+        };
+        self.add(
+            self.text(&[gas], &[ice]),
+            vec![gas],
+            vec![ice],
+            cause,
+            &origin,
+        );
         origin.within = line.within.unwrap_or(default_within(line.standing));
         origin.standing = line.standing;
         origin.source = match &line.pure {
@@ -320,15 +425,31 @@ impl<'a> Expansion<'a> {
             _ => &line.source,
         };
         let back = self.text(&[ice], &[gas]);
-        let cause = Cause::ThermalDesorption { binding: binding.clone() };
+        let cause = Cause::ThermalDesorption {
+            binding: binding.clone(),
+        };
         self.add(back.clone(), vec![ice], vec![gas], cause, &origin);
-        self.add(back, vec![ice], vec![gas], Cause::CosmicDesorption { binding }, &origin);
+        self.add(
+            back,
+            vec![ice],
+            vec![gas],
+            Cause::CosmicDesorption { binding },
+            &origin,
+        );
         for (j, channel) in line.photodesorption.iter().enumerate() {
             let products = network.photodesorption[index][j].clone();
             origin.line = network.line(&format!("ices[{index}].photodesorption[{j}]"));
             origin.source = &channel.source;
-            let cause = Cause::Photodesorption { yields: channel.yields };
-            self.add(self.text(&[ice], &products), vec![ice], products, cause, &origin);
+            let cause = Cause::Photodesorption {
+                yields: channel.yields,
+            };
+            self.add(
+                self.text(&[ice], &products),
+                vec![ice],
+                products,
+                cause,
+                &origin,
+            );
         }
     }
 
@@ -346,14 +467,22 @@ impl<'a> Expansion<'a> {
         };
         let hop_energy = line.hop_energy.unwrap_or(line.energy);
         let hop_barrier = line.hop_barrier.unwrap_or(ratio * hop_energy);
-        Binding { energy, prefactor, hop_energy, hop_barrier, mass: species.mass }
+        Binding {
+            energy,
+            prefactor,
+            hop_energy,
+            hop_barrier,
+            mass: species.mass,
+        }
     }
 
     /// A surface line: the part that stays, then the part that leaves.
     fn surface(&mut self, entry: &Entry) {
         let network = self.network;
         let line = &network.file.surface[entry.index];
-        let &[a, b] = &entry.reactants[..] else { return };
+        let &[a, b] = &entry.reactants[..] else {
+            return;
+        };
         let origin = Origin {
             line: entry.line,
             within: line.within.unwrap_or(default_within(line.standing)),
@@ -365,16 +494,36 @@ impl<'a> Expansion<'a> {
         let (first, second) = (self.binding(a - gas), self.binding(b - gas));
         let consumed = self.ids(&entry.reactants);
         let products = self.ids(&entry.products);
-        if entry.products.iter().all(|place| !network.roster.is_ice(*place)) {
+        if entry
+            .products
+            .iter()
+            .all(|place| !network.roster.is_ice(*place))
+        {
             let cause = encounter(line, first, second, a == b, share);
             self.add(entry.change.clone(), consumed, products, cause, &origin);
             return;
         }
         let leaves = line.leaves.unwrap_or(self.options.leaving_share);
-        let stays = encounter(line, first.clone(), second.clone(), a == b, share * (1.0 - leaves));
-        self.add(entry.change.clone(), consumed.clone(), products, stays, &origin);
+        let stays = encounter(
+            line,
+            first.clone(),
+            second.clone(),
+            a == b,
+            share * (1.0 - leaves),
+        );
+        self.add(
+            entry.change.clone(),
+            consumed.clone(),
+            products,
+            stays,
+            &origin,
+        );
         if leaves > 0.0 {
-            let gone: Vec<usize> = entry.products.iter().map(|s| network.roster.gas_form(*s)).collect();
+            let gone: Vec<usize> = entry
+                .products
+                .iter()
+                .map(|s| network.roster.gas_form(*s))
+                .collect();
             let cause = encounter(line, first, second, a == b, share * leaves);
             self.add(self.text(&consumed, &gone), consumed, gone, cause, &origin);
         }
@@ -383,7 +532,10 @@ impl<'a> Expansion<'a> {
     /// The written form of a generated change.
     fn text(&self, left: &[SpeciesId], right: &[SpeciesId]) -> String {
         let side = |ids: &[SpeciesId]| {
-            ids.iter().map(|id| self.species[*id].name.as_str()).collect::<Vec<_>>().join(" + ")
+            ids.iter()
+                .map(|id| self.species[*id].name.as_str())
+                .collect::<Vec<_>>()
+                .join(" + ")
         };
         format!("{} -> {}", side(left), side(right))
     }
@@ -411,7 +563,13 @@ fn ice_total() -> Species {
 
 fn charging(sticking: f64, projectile: &Species, grain: i32, share: f64) -> Cause {
     let (charge, mass) = (projectile.charge, projectile.mass);
-    Cause::Charging { sticking, charge, mass, grain, share }
+    Cause::Charging {
+        sticking,
+        charge,
+        mass,
+        grain,
+        share,
+    }
 }
 
 fn encounter(line: &SurfaceLine, first: Binding, second: Binding, same: bool, share: f64) -> Cause {
@@ -431,5 +589,10 @@ fn encounter(line: &SurfaceLine, first: Binding, second: Binding, same: bool, sh
 /// The lines of `dust` have a source but no standing.
 fn dust_origin(line: usize, source: &str) -> Origin<'_> {
     let standing = Standing::Recalled;
-    Origin { line, within: default_within(standing), standing, source }
+    Origin {
+        line,
+        within: default_within(standing),
+        standing,
+        source,
+    }
 }
