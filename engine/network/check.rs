@@ -133,8 +133,8 @@ fn duplicates(file: &NetworkFile, entries: &[Entry], findings: &mut Findings) {
     for entry in entries {
         let key = (
             drive(file, entry),
-            sorted(&entry.reactants),
-            sorted(&entry.products),
+            entry.reactant_set(),
+            entry.product_set(),
         );
         let Some(first) = seen.get(&key) else {
             seen.insert(key, entry.line);
@@ -163,12 +163,6 @@ fn drive(file: &NetworkFile, entry: &Entry) -> &'static str {
         Group::Cosmic if file.cosmic[entry.index].secondary.is_some() => "secondary",
         group => group.key(),
     }
-}
-
-fn sorted(places: &[usize]) -> Vec<usize> {
-    let mut places = places.to_vec();
-    places.sort_unstable();
-    places
 }
 
 /// Photodesorption: gas products with the atoms of the adsorbed species.

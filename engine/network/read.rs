@@ -54,6 +54,22 @@ impl Entry {
     pub fn place(&self, field: &str) -> String {
         format!("{}[{}].{field}", self.group.key(), self.index)
     }
+
+    /// The reactants in an order that does not depend on how they are written.
+    pub fn reactant_set(&self) -> Vec<usize> {
+        sorted(&self.reactants)
+    }
+
+    /// The products likewise.
+    pub fn product_set(&self) -> Vec<usize> {
+        sorted(&self.products)
+    }
+}
+
+fn sorted(places: &[usize]) -> Vec<usize> {
+    let mut places = places.to_vec();
+    places.sort_unstable();
+    places
 }
 
 /// Reads and checks a network from the text of the file `path`; reports all errors it can find.

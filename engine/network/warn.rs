@@ -298,7 +298,7 @@ fn barrier(network: &Network, entry: &Entry) -> Option<f64> {
 
 /// Reactions that give back what they take.
 fn changes_nothing(entry: &Entry, warnings: &mut Vec<Warning>) {
-    if sorted(&entry.reactants) == sorted(&entry.products) {
+    if entry.reactant_set() == entry.product_set() {
         warnings.push(Warning {
             line: entry.line,
             entry: entry.change.clone(),
@@ -316,7 +316,7 @@ fn shares(network: &Network, warnings: &mut Vec<Warning>) {
         .iter()
         .filter(|entry| entry.group == Group::Surface)
     {
-        let (sum, channels) = pairs.entry(sorted(&entry.reactants)).or_default();
+        let (sum, channels) = pairs.entry(entry.reactant_set()).or_default();
         *sum += network.file.surface[entry.index].share.unwrap_or(1.0);
         channels.push(entry);
     }
@@ -336,12 +336,6 @@ fn shares(network: &Network, warnings: &mut Vec<Warning>) {
             kind: WarningKind::SharesAboveOne,
         });
     }
-}
-
-fn sorted(places: &[usize]) -> Vec<usize> {
-    let mut places = places.to_vec();
-    places.sort_unstable();
-    places
 }
 
 /// Pieces that differ where they should meet.

@@ -114,9 +114,7 @@ fn pair_shares(file: &NetworkFile, entries: &[Entry], findings: &mut Findings) {
     let barrierless =
         |entry: &&Entry| entry.group == Group::Surface && file.surface[entry.index].barrier <= 0.0;
     for entry in entries.iter().filter(barrierless) {
-        let mut pair = entry.reactants.clone();
-        pair.sort_unstable();
-        let (sum, channels) = pairs.entry(pair).or_default();
+        let (sum, channels) = pairs.entry(entry.reactant_set()).or_default();
         *sum += file.surface[entry.index].share.unwrap_or(1.0);
         channels.push(entry);
     }
