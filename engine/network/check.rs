@@ -17,12 +17,7 @@ use super::roster::Roster;
 use std::collections::{BTreeMap, HashMap};
 
 /// Checks everything that does not already fail while species are looked up.
-pub(super) fn all(
-    file: &NetworkFile,
-    roster: &Roster,
-    entries: &[Entry],
-    findings: &mut Findings,
-) {
+pub(super) fn all(file: &NetworkFile, roster: &Roster, entries: &[Entry], findings: &mut Findings) {
     for entry in entries {
         reactant_count(entry, findings);
         phases(entry, roster, findings);
@@ -41,9 +36,14 @@ pub(super) fn all(
 fn reactant_count(entry: &Entry, findings: &mut Findings) {
     let (found, expected) = (entry.reactants.len(), entry.group.reactants());
     if found != expected {
-        let found = format!("{found} {}", if found == 1 { "reactant" } else { "reactants" });
+        let found = format!(
+            "{found} {}",
+            if found == 1 { "reactant" } else { "reactants" }
+        );
         let expected = match entry.group {
-            Group::ThirdBody => "1 reactant in `third_body` (the partner M is not written)".to_string(),
+            Group::ThirdBody => {
+                "1 reactant in `third_body` (the partner M is not written)".to_string()
+            }
             group => format!("{expected} in `{}`", group.key()),
         };
         findings.add(&entry.place("change"), &entry.change, found, expected);
@@ -54,8 +54,15 @@ fn reactant_count(entry: &Entry, findings: &mut Findings) {
 fn phases(entry: &Entry, roster: &Roster, findings: &mut Findings) {
     let surface = entry.group == Group::Surface;
     let place = entry.place("change");
-    if let Some(gas) = entry.reactants.iter().find(|s| surface && !roster.is_ice(**s)) {
-        let found = format!("the gas species `{}` as reactant", roster.species[*gas].name);
+    if let Some(gas) = entry
+        .reactants
+        .iter()
+        .find(|s| surface && !roster.is_ice(**s))
+    {
+        let found = format!(
+            "the gas species `{}` as reactant",
+            roster.species[*gas].name
+        );
         findings.add(&place, &entry.change, found, "adsorbed reactants, `X(ads)`");
     }
     let both = entry.reactants.iter().chain(&entry.products);
@@ -66,16 +73,23 @@ fn phases(entry: &Entry, roster: &Roster, findings: &mut Findings) {
     }
 }
 
-/// Atoms and charge must be the same on both sides, and something must change.
+/// Atoms and charge must be the same on both sides.
 fn balance(entry: &Entry, roster: &Roster, findings: &mut Findings) {
-    let of = |places: &[usize]| places.iter().map(|s| roster.species[*s].clone()).collect::<Vec<_>>();
+    let of = |places: &[usize]| {
+        places
+            .iter()
+            .map(|s| roster.species[*s].clone())
+            .collect::<Vec<_>>()
+    };
     let (left, right) = (of(&entry.reactants), of(&entry.products));
     let place = entry.place("change");
     if let Some(found) = imbalance(&left, &right) {
-        findings.add(&place, &entry.change, found, "the same atoms and charge on both sides");
-    }
-    if sorted(&entry.reactants) == sorted(&entry.products) {
-        findings.add(&place, &entry.change, "the same species on both sides", "a change");
+        findings.add(
+            &place,
+            &entry.change,
+            found,
+            "the same atoms and charge on both sides",
+        );
     }
 }
 
@@ -95,7 +109,11 @@ pub(super) fn imbalance(left: &[Species], right: &[Species]) -> Option<String> {
         .into_iter()
         .filter(|(_, n)| *n != 0)
         .map(|(element, n)| {
-            format!("{} {element} too {}", n.abs(), if n > 0 { "many" } else { "few" })
+            format!(
+                "{} {element} too {}",
+                n.abs(),
+                if n > 0 { "many" } else { "few" }
+            )
         })
         .collect();
     if charge != 0 {
@@ -107,21 +125,31 @@ pub(super) fn imbalance(left: &[Species], right: &[Species]) -> Option<String> {
 
 /// Entries with the same change, driven by the same kind of cause, must say that they add.
 fn duplicates(file: &NetworkFile, entries: &[Entry], findings: &mut Findings) {
-    let heads: HashMap<(Group, usize), Head> =
-        groups::heads(file).into_iter().map(|head| ((head.group, head.index), head)).collect();
+    let heads: HashMap<(Group, usize), Head> = groups::heads(file)
+        .into_iter()
+        .map(|head| ((head.group, head.index), head))
+        .collect();
     let mut seen: HashMap<(&str, Vec<usize>, Vec<usize>), usize> = HashMap::new();
     for entry in entries {
-        let key = (drive(file, entry), sorted(&entry.reactants), sorted(&entry.products));
+        let key = (
+            drive(file, entry),
+            entry.reactant_set(),
+            entry.product_set(),
+        );
         let Some(first) = seen.get(&key) else {
             seen.insert(key, entry.line);
             continue;
         };
-        let adds = heads.get(&(entry.group, entry.index)).is_some_and(|head| head.adds);
+        let adds = heads
+            .get(&(entry.group, entry.index))
+            .is_some_and(|head| head.adds);
         if !adds {
             let found = format!("the same change as line {first}");
             let expected = match entry.group {
                 Group::Light | Group::Cosmic | Group::Surface => "one entry",
-                _ => "one entry (with `pieces` for several ranges), or `adds: true` here if both add up",
+                _ => {
+                    "one entry (with `pieces` for several ranges), or `adds: true` here if both add up"
+                }
             };
             findings.add(&entry.place("change"), &entry.change, found, expected);
         }
@@ -137,12 +165,6 @@ fn drive(file: &NetworkFile, entry: &Entry) -> &'static str {
     }
 }
 
-fn sorted(places: &[usize]) -> Vec<usize> {
-    let mut places = places.to_vec();
-    places.sort_unstable();
-    places
-}
-
 /// Photodesorption: gas products with the atoms of the adsorbed species.
 pub(super) fn desorbed(
     products: &[usize],
@@ -152,7 +174,10 @@ pub(super) fn desorbed(
     entry: &str,
     findings: &mut Findings,
 ) {
-    let right: Vec<Species> = products.iter().map(|s| roster.species[*s].clone()).collect();
+    let right: Vec<Species> = products
+        .iter()
+        .map(|s| roster.species[*s].clone())
+        .collect();
     if let Some(ice) = products.iter().find(|s| roster.is_ice(**s)) {
         let found = format!("the adsorbed species `{}`", roster.species[*ice].name);
         findings.add(place, entry, found, "gas products");
@@ -177,10 +202,22 @@ pub(super) fn neutralised(
         findings.add(place, entry, found, "an ion of charge +1");
         return;
     }
-    let neutral = Species { charge: 0, ..species.clone() };
+    let neutral = Species {
+        charge: 0,
+        ..species.clone()
+    };
     let right: Vec<Species> = becomes.iter().map(|s| roster.species[*s].clone()).collect();
-    if let Some(wrong) = right.iter().zip(becomes).find(|(s, p)| s.charge != 0 || roster.is_ice(**p)) {
-        findings.add(place, entry, format!("`{}`", wrong.0.name), "neutral gas products");
+    if let Some(wrong) = right
+        .iter()
+        .zip(becomes)
+        .find(|(s, p)| s.charge != 0 || roster.is_ice(**p))
+    {
+        findings.add(
+            place,
+            entry,
+            format!("`{}`", wrong.0.name),
+            "neutral gas products",
+        );
     } else if let Some(found) = imbalance(&[neutral], &right) {
         findings.add(place, entry, found, "the atoms of the ion, and no charge");
     }

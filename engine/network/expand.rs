@@ -4,14 +4,17 @@
 //! It never evaluates a rate. The order of species and reactions is part of the run file; it is
 //! documented in networks/README.md.
 
+mod grains;
+mod written;
+
 use super::check::STANDARD_SPECTRUM;
-use super::groups::{self, Group};
-use super::layout::{Below, IceLine, Standing, SurfaceLine};
+use super::groups::Group;
+use super::layout::Standing;
 use super::model::{
-    Barrier, Binding, Cause, Chemistry, GrainOptions, Phase, Range, Reaction, Shielding, Species, SpeciesId,
+    Cause, Chemistry, GrainOptions, Phase, Reaction, Shielding, Species, SpeciesId,
 };
 use super::names;
-use super::read::{Entry, Network};
+use super::read::Network;
 use crate::errors::InputError;
 use std::collections::HashMap;
 use std::mem::Discriminant;
@@ -57,7 +60,11 @@ pub fn expand(network: &Network, options: &GrainOptions) -> Result<Chemistry, Ve
     for ice in 0..network.file.ices.len() {
         expansion.ice(ice);
     }
-    for entry in network.entries.iter().filter(|entry| entry.group == Group::Surface) {
+    for entry in network
+        .entries
+        .iter()
+        .filter(|entry| entry.group == Group::Surface)
+    {
         expansion.surface(entry);
     }
     Ok(Chemistry {
@@ -74,7 +81,9 @@ pub fn expand(network: &Network, options: &GrainOptions) -> Result<Chemistry, Ve
 /// The standard spectrum, then those of the file.
 fn spectra(network: &Network) -> Vec<String> {
     let standard = std::iter::once(STANDARD_SPECTRUM.to_string());
-    standard.chain(network.file.spectra.keys().cloned()).collect()
+    standard
+        .chain(network.file.spectra.keys().cloned())
+        .collect()
 }
 
 /// H2, then every other species whose column shields, in file order.
@@ -93,7 +102,10 @@ fn shielding(network: &Network, column_species: &[String]) -> Vec<Shielding> {
     let law = |line: &super::layout::ShieldingLine| Shielding {
         name: line.name.clone(),
         law: line.law,
-        column: column_species.iter().position(|name| *name == line.column).unwrap_or(0),
+        column: column_species
+            .iter()
+            .position(|name| *name == line.column)
+            .unwrap_or(0),
         h2: 0,
         log_column: line.log_column.clone(),
         log_h2: line.log_h2.clone(),
@@ -135,13 +147,26 @@ impl<'a> Expansion<'a> {
             species.push(ice_total());
         }
         let (reactions, groups) = (Vec::new(), HashMap::new());
-        Expansion { network, options, species, reactions, groups, dust }
+        Expansion {
+            network,
+            options,
+            species,
+            reactions,
+            groups,
+            dust,
+        }
     }
 
     /// State places of roster places.
     fn ids(&self, places: &[usize]) -> Vec<SpeciesId> {
         let gas = self.network.roster.gas;
-        let id = |place: &usize| if *place < gas { *place } else { *place + self.dust };
+        let id = |place: &usize| {
+            if *place < gas {
+                *place
+            } else {
+                *place + self.dust
+            }
+        };
         places.iter().map(id).collect()
     }
 
@@ -174,7 +199,10 @@ impl<'a> Expansion<'a> {
         let mut key = reactants.clone();
         key.sort_unstable();
         let next = self.groups.len();
-        let group = *self.groups.entry((std::mem::discriminant(&cause), key)).or_insert(next);
+        let group = *self
+            .groups
+            .entry((std::mem::discriminant(&cause), key))
+            .or_insert(next);
         self.reactions.push(Reaction {
             change,
             reactants,
@@ -189,220 +217,13 @@ impl<'a> Expansion<'a> {
         });
     }
 
-    /// A reaction written in the file, other than on surfaces.
-    fn written(&mut self, entry: &Entry) {
-        let file = &self.network.file;
-        let range = |valid, below: Option<Below>| Range { valid, below: below.unwrap_or(Below::Extend) };
-        let below = |below: Option<Below>| below.unwrap_or(Below::Extend);
-        // Every line type carries these three; only the cause differs.
-        macro_rules! origin {
-            ($line:expr) => {
-                Origin {
-                    line: entry.line,
-                    within: $line.within.unwrap_or(default_within($line.standing)),
-                    standing: $line.standing,
-                    source: &$line.source,
-                }
-            };
-        }
-        let (cause, origin) = match entry.group {
-            Group::Gas | Group::ThreeBody => {
-                let lines = if entry.group == Group::Gas { &file.gas } else { &file.three_body };
-                let line = &lines[entry.index];
-                let pieces = groups::pieces(line);
-                (Cause::PowerLaw { pieces, below: below(line.below) }, origin!(line))
-            }
-            Group::ThirdBody => {
-                let line = &file.third_body[entry.index];
-                let pieces = groups::pieces(line);
-                (Cause::ThirdBody { pieces, below: below(line.below) }, origin!(line))
-            }
-            Group::Capture => {
-                let line = &file.capture[entry.index];
-                let range = range(line.valid, line.below);
-                let (langevin, x_300k) = (line.langevin, line.x_300k);
-                (Cause::Capture { langevin, x_300k, range }, origin!(line))
-            }
-            Group::Falloff => {
-                let line = &file.falloff[entry.index];
-                let numbers = |l: &super::layout::LimitLine| [l.at_300k, l.slope, l.barrier];
-                let (low, high) = (numbers(&line.low), numbers(&line.high));
-                let range = range(line.valid, line.below);
-                (Cause::Falloff { low, high, centre: line.centre, range }, origin!(line))
-            }
-            Group::Light => {
-                let line = &file.light[entry.index];
-                let others = file.spectra.keys().map(|name| line.spectra.get(name).copied());
-                let rates = std::iter::once(Some(line.rate)).chain(others).collect();
-                let named = |name: &String| file.shielding.iter().position(|s| s.name == *name);
-                let shield = line.shield.as_ref().and_then(named);
-                (Cause::Light { rates, extinction: line.extinction, shield }, origin!(line))
-            }
-            Group::Cosmic => {
-                let line = &file.cosmic[entry.index];
-                let cause = match (line.direct, line.secondary) {
-                    (Some(value), _) => Cause::Ionisation { value },
-                    (None, value) => Cause::SecondaryLight { value: value.unwrap_or(0.0) },
-                };
-                (cause, origin!(line))
-            }
-            Group::Surface => return,
-        };
-        let (consumed, products) = (self.ids(&entry.reactants), self.ids(&entry.products));
-        self.add(entry.change.clone(), consumed, products, cause, &origin);
-    }
-
-    fn hydrogen_formation(&mut self) {
-        let network = self.network;
-        let Some(line) = network.file.dust.as_ref().and_then(|d| d.hydrogen_formation.as_ref()) else {
-            return;
-        };
-        let (Some(h), Some(h2)) = (network.roster.find("H"), network.roster.find("H2")) else {
-            return;
-        };
-        let origin = dust_origin(network.line("dust.hydrogen_formation"), &line.source);
-        let cause = Cause::HydrogenFormation { at_100k: line.at_100k, slope: line.slope };
-        let change = "H + H -> H2 (on dust)".to_string();
-        self.push(change, vec![h], vec![h, h], vec![h2], cause, &origin);
-    }
-
-    /// Electrons, then every ion, on grains of every charge that can take theirs.
-    fn charging(&mut self) {
-        let network = self.network;
-        let Some(block) = &network.file.dust else { return };
-        let n = self.options.charge_states;
-        if let Some(electron) = network.roster.find("e-") {
-            let origin = dust_origin(network.line("dust.electron_sticking"), "");
-            let sticking = block.electron_sticking.unwrap_or(0.6);
-            for grain in -n + 1..=n {
-                let cause = charging(sticking, &self.species[electron], grain, 1.0);
-                let consumed = vec![electron, self.dust_id(grain)];
-                let products = vec![self.dust_id(grain - 1)];
-                self.add(self.text(&consumed, &products), consumed, products, cause, &origin);
-            }
-        }
-        let sticking = block.ion_sticking.unwrap_or(1.0);
-        for (i, (line, (ion, becomes))) in
-            block.neutralisation.iter().zip(&network.neutralisation).enumerate()
-        {
-            let place = network.line(&format!("dust.neutralisation[{i}]"));
-            let origin = dust_origin(place, &line.source);
-            for grain in -n..n {
-                let cause = charging(sticking, &self.species[*ion], grain, line.share);
-                let consumed = vec![*ion, self.dust_id(grain)];
-                let mut products = becomes.clone();
-                products.push(self.dust_id(grain + 1));
-                self.add(self.text(&consumed, &products), consumed, products, cause, &origin);
-            }
-        }
-    }
-
-    /// Freeze-out and desorption of one ice line.
-    fn ice(&mut self, index: usize) {
-        let network = self.network;
-        let line = &network.file.ices[index];
-        let ice_place = network.roster.gas + index;
-        let (gas, ice) = (network.roster.gas_form(ice_place), ice_place + self.dust);
-        let binding = self.binding(index);
-        let mut origin = Origin {
-            line: network.line(&format!("ices[{index}]")),
-            within: 1.0,
-            standing: Standing::Evaluated,
-            source: "",
-        };
-        // Sticking is kinetic theory; the binding carries the uncertainty of the line.
-        let cause = Cause::Accretion { mass: binding.mass, hydrogen: line.species == "H" };
-        self.add(self.text(&[gas], &[ice]), vec![gas], vec![ice], cause, &origin);
-        origin.within = line.within.unwrap_or(default_within(line.standing));
-        origin.standing = line.standing;
-        origin.source = match &line.pure {
-            Some(pure) if self.options.pure_ice => &pure.source,
-            _ => &line.source,
-        };
-        let back = self.text(&[ice], &[gas]);
-        let cause = Cause::ThermalDesorption { binding: binding.clone() };
-        self.add(back.clone(), vec![ice], vec![gas], cause, &origin);
-        self.add(back, vec![ice], vec![gas], Cause::CosmicDesorption { binding }, &origin);
-        for (j, channel) in line.photodesorption.iter().enumerate() {
-            let products = network.photodesorption[index][j].clone();
-            origin.line = network.line(&format!("ices[{index}].photodesorption[{j}]"));
-            origin.source = &channel.source;
-            let cause = Cause::Photodesorption { yields: channel.yields };
-            self.add(self.text(&[ice], &products), vec![ice], products, cause, &origin);
-        }
-    }
-
-    fn binding(&self, index: usize) -> Binding {
-        let line: &IceLine = &self.network.file.ices[index];
-        let species = &self.network.roster.species[self.network.roster.gas + index];
-        let (energy, prefactor) = match &line.pure {
-            Some(pure) if self.options.pure_ice => (pure.energy, pure.prefactor),
-            _ => (line.energy, line.prefactor),
-        };
-        let atoms: u32 = species.atoms.iter().map(|(_, count)| count).sum();
-        let ratio = match atoms {
-            1 => self.options.hop_ratio_atoms,
-            _ => self.options.hop_ratio_molecules,
-        };
-        let hop_energy = line.hop_energy.unwrap_or(line.energy);
-        let hop_barrier = line.hop_barrier.unwrap_or(ratio * hop_energy);
-        Binding { energy, prefactor, hop_energy, hop_barrier, mass: species.mass }
-    }
-
-    /// A surface line: the part that stays, then the part that leaves.
-    fn surface(&mut self, entry: &Entry) {
-        let network = self.network;
-        let line = &network.file.surface[entry.index];
-        let &[a, b] = &entry.reactants[..] else { return };
-        let origin = Origin {
-            line: entry.line,
-            within: line.within.unwrap_or(default_within(line.standing)),
-            standing: line.standing,
-            source: &line.source,
-        };
-        let gas = network.roster.gas;
-        let pair = [self.binding(a - gas), self.binding(b - gas)];
-        let own = barrier(line, &pair);
-        let channels = self.channels(entry, &pair);
-        let cause = |share: f64| Cause::Surface {
-            first: pair[0].clone(),
-            second: pair[1].clone(),
-            same: a == b,
-            own: Barrier { share: own.share * share, ..own },
-            channels: channels.clone(),
-        };
-        let consumed = self.ids(&entry.reactants);
-        let products = self.ids(&entry.products);
-        if entry.products.iter().all(|place| !network.roster.is_ice(*place)) {
-            self.add(entry.change.clone(), consumed, products, cause(1.0), &origin);
-            return;
-        }
-        let leaves = line.leaves.unwrap_or(self.options.leaving_share);
-        self.add(entry.change.clone(), consumed.clone(), products, cause(1.0 - leaves), &origin);
-        if leaves > 0.0 {
-            let gone: Vec<usize> = entry.products.iter().map(|s| network.roster.gas_form(*s)).collect();
-            self.add(self.text(&consumed, &gone), consumed, gone, cause(leaves), &origin);
-        }
-    }
-
-    /// The barriers of all channels of the pair that meets in `entry`.
-    fn channels(&self, entry: &Entry, pair: &[Binding; 2]) -> Vec<Barrier> {
-        let sorted = |places: &[usize]| {
-            let mut places = places.to_vec();
-            places.sort_unstable();
-            places
-        };
-        let wanted = sorted(&entry.reactants);
-        let all = self.network.entries.iter().filter(|other| other.group == Group::Surface);
-        all.filter(|other| sorted(&other.reactants) == wanted)
-            .map(|other| barrier(&self.network.file.surface[other.index], pair))
-            .collect()
-    }
-
     /// The written form of a generated change.
     fn text(&self, left: &[SpeciesId], right: &[SpeciesId]) -> String {
         let side = |ids: &[SpeciesId]| {
-            ids.iter().map(|id| self.species[*id].name.as_str()).collect::<Vec<_>>().join(" + ")
+            ids.iter()
+                .map(|id| self.species[*id].name.as_str())
+                .collect::<Vec<_>>()
+                .join(" + ")
         };
         format!("{} -> {}", side(left), side(right))
     }
@@ -426,26 +247,4 @@ fn ice_total() -> Species {
         mass: 0.0,
         atoms: Vec::new(),
     }
-}
-
-fn charging(sticking: f64, projectile: &Species, grain: i32, share: f64) -> Cause {
-    let (charge, mass) = (projectile.charge, projectile.mass);
-    Cause::Charging { sticking, charge, mass, grain, share }
-}
-
-fn barrier(line: &SurfaceLine, pair: &[Binding; 2]) -> Barrier {
-    let reduced_mass = pair[0].mass * pair[1].mass / (pair[0].mass + pair[1].mass);
-    Barrier {
-        height: line.barrier,
-        // Without a barrier the width plays no part.
-        width: line.width.unwrap_or(1.0),
-        mass: line.tunnelling_mass.unwrap_or(reduced_mass),
-        share: line.share.unwrap_or(1.0),
-    }
-}
-
-/// The lines of `dust` have a source but no standing.
-fn dust_origin(line: usize, source: &str) -> Origin<'_> {
-    let standing = Standing::Recalled;
-    Origin { line, within: default_within(standing), standing, source }
 }

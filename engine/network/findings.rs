@@ -24,6 +24,8 @@ pub enum WarningKind {
     Jump,
     /// An ion that no line lets grains neutralise.
     NeverNeutralised,
+    /// A reaction with the same species on both sides.
+    ChangesNothing,
 }
 
 /// Something that is allowed but probably not meant.
@@ -46,7 +48,11 @@ pub(super) struct Findings<'a> {
 
 impl<'a> Findings<'a> {
     pub fn new(file: &'a Path, positions: &'a Positions) -> Self {
-        Findings { file, positions, errors: Vec::new() }
+        Findings {
+            file,
+            positions,
+            errors: Vec::new(),
+        }
     }
 
     /// Notes an error at a key path such as `gas[3].slope`.
@@ -58,7 +64,8 @@ impl<'a> Findings<'a> {
         expected: impl Into<String>,
     ) {
         let line = self.positions.nearest_line(place);
-        self.errors.push(InputError::new(self.file, line, entry, found, expected));
+        self.errors
+            .push(InputError::new(self.file, line, entry, found, expected));
     }
 
     pub fn none(&self) -> bool {
@@ -73,7 +80,13 @@ impl<'a> Findings<'a> {
         if further > 0 {
             let found = format!("{further} further errors");
             let expected = "the errors above corrected first";
-            self.errors.push(InputError::new(self.file, None, "whole file", found, expected));
+            self.errors.push(InputError::new(
+                self.file,
+                None,
+                "whole file",
+                found,
+                expected,
+            ));
         }
         self.errors
     }

@@ -95,7 +95,10 @@ pub fn power_laws(file: &NetworkFile) -> impl Iterator<Item = (Group, usize, &Ga
         (Group::ThirdBody, &file.third_body),
     ];
     groups.into_iter().flat_map(|(group, lines)| {
-        lines.iter().enumerate().map(move |(index, line)| (group, index, line))
+        lines
+            .iter()
+            .enumerate()
+            .map(move |(index, line)| (group, index, line))
     })
 }
 
@@ -104,7 +107,12 @@ pub fn power_laws(file: &NetworkFile) -> impl Iterator<Item = (Group, usize, &Ga
 pub fn pieces(line: &GasLine) -> Vec<Piece> {
     if let (true, Some(at_300k), Some(valid)) = (line.pieces.is_empty(), line.at_300k, line.valid) {
         let (slope, barrier) = (line.slope.unwrap_or(0.0), line.barrier.unwrap_or(0.0));
-        return vec![Piece { at_300k, slope, barrier, valid }];
+        return vec![Piece {
+            at_300k,
+            slope,
+            barrier,
+            valid,
+        }];
     }
     let piece = |p: &super::layout::PieceLine| Piece {
         at_300k: p.at_300k,

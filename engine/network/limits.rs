@@ -24,7 +24,11 @@ pub fn capture(polarisability: f64, dipole: f64, reduced_mass: f64, temperature:
 
 /// Capture over Langevin coefficient for the reduced dipole parameter x (Su & Chesnavich 1982).
 pub fn dipole_factor(x: f64) -> f64 {
-    if x >= 2.0 { 0.4767 * x + 0.62 } else { (x + 0.509).powi(2) / 10.526 + 0.9754 }
+    if x >= 2.0 {
+        0.4767 * x + 0.62
+    } else {
+        (x + 0.509).powi(2) / 10.526 + 0.9754
+    }
 }
 
 /// a (T/300)^b exp(-c/T).
@@ -49,10 +53,19 @@ pub fn evaluated_at(valid: [f64; 2], below: Below, temperature: f64) -> Option<f
 
 /// Value of ascending pieces at T (K): the lower piece includes its upper end.
 pub fn pieces(all: &[Piece], below: Below, temperature: f64) -> f64 {
-    let Some(lowest) = all.first() else { return 0.0 };
-    let here = all.iter().find(|piece| temperature <= piece.valid[1]).or(all.last());
+    let Some(lowest) = all.first() else {
+        return 0.0;
+    };
+    let here = all
+        .iter()
+        .find(|piece| temperature <= piece.valid[1])
+        .or(all.last());
     let here = here.unwrap_or(lowest);
-    let below = if std::ptr::eq(here, lowest) { below } else { Below::Extend };
+    let below = if std::ptr::eq(here, lowest) {
+        below
+    } else {
+        Below::Extend
+    };
     evaluated_at(here.valid, below, temperature).map_or(0.0, |at| piece(here, at))
 }
 
@@ -63,24 +76,39 @@ mod tests {
     // A limit that is off would either hide impossible coefficients or cry wolf.
     #[test]
     fn capture_matches_published_values() {
-        // H3+ + CO: Langevin coefficient 1.99e-9 (A 1.95, mu 2.729), from
-        // 2.342e-9 sqrt(alpha/mu), the usual practical form.
-        let mass = 3.024 * 28.010 / (3.024 + 28.010);
-        let expected = 2.342e-9 * (1.95_f64 / mass).sqrt();
-        let langevin = capture(1.95, 0.0, mass, 300.0);
-        assert!((langevin / expected - 1.0).abs() < 1e-3, "{langevin:e}");
-        // x = 85.11 mu_D / sqrt(alpha T) in Debye, A^3, K: H2O at 300 K has x = 7.57.
-        let water = capture(1.45, 1.855, 1.0, 300.0) / capture(1.45, 0.0, 1.0, 300.0);
-        let x = 85.11 * 1.855 / (1.45_f64 * 300.0).sqrt();
-        let ratio = (0.4767 * x + 0.62) / (0.509_f64.powi(2) / 10.526 + 0.9754);
-        assert!((water / ratio - 1.0).abs() < 1e-3, "{water} {ratio}");
+        // Values of the collected facts (closed_form_checks.md, section 2), computed there from
+        // Su & Chesnavich 1982 apart from this code: (polarisability, dipole, masses, 10 K, 300 K).
+        for (alpha, dipole, ion, neutral, cold, warm) in [
+            (1.45, 1.855, 3.024, 18.015, 2.5579e-8, 5.5582e-9),
+            (1.95, 0.11, 3.024, 28.010, 2.6892e-9, 2.0461e-9),
+            (1.74, 0.0, 3.024, 28.014, 1.8699e-9, 1.8699e-9),
+            (2.16, 1.472, 29.018, 17.031, 1.0198e-8, 2.3943e-9),
+        ] {
+            let mass = ion * neutral / (ion + neutral);
+            for (t, expected) in [(10.0, cold), (300.0, warm)] {
+                let value = capture(alpha, dipole, mass, t);
+                assert!(
+                    (value / expected - 1.0).abs() < 1e-3,
+                    "{neutral} {t}: {value:e}"
+                );
+            }
+        }
         assert!((dipole_factor(2.0 - 1e-12) / dipole_factor(2.0) - 1.0).abs() < 5e-3);
     }
 
     #[test]
     fn pieces_follow_their_ranges() {
-        let piece = |at_300k, slope, low, high| Piece { at_300k, slope, barrier: 0.0, valid: [low, high] };
-        let all = [piece(1.0, 1.0, 30.0, 100.0), piece(2.0, 0.0, 100.0, 300.0), piece(5.0, 1.0, 300.0, 600.0)];
+        let piece = |at_300k, slope, low, high| Piece {
+            at_300k,
+            slope,
+            barrier: 0.0,
+            valid: [low, high],
+        };
+        let all = [
+            piece(1.0, 1.0, 30.0, 100.0),
+            piece(2.0, 0.0, 100.0, 300.0),
+            piece(5.0, 1.0, 300.0, 600.0),
+        ];
         assert_eq!(pieces(&all, Below::Extend, 15.0), 0.05);
         assert_eq!(pieces(&all, Below::Hold, 15.0), 0.1);
         assert_eq!(pieces(&all, Below::Zero, 15.0), 0.0);

@@ -18,3 +18,6 @@ mod warn;
 pub use expand::expand;
 pub use findings::{Warning, WarningKind};
 pub use read::{Network, read};
+
+#[cfg(test)]
+mod tests;

@@ -69,28 +69,69 @@ pub struct Binding {
 pub enum Cause {
     /// Power law; two-body (cm^3 s^-1) or three-body (cm^6 s^-1) by the number of reactants.
     /// Pieces ascend in temperature and abut.
-    PowerLaw { pieces: Vec<Piece>, below: Below },
+    PowerLaw {
+        pieces: Vec<Piece>,
+        below: Below,
+    },
     /// As `PowerLaw`, times [M] = n(H2) + n(H) + n(He).
-    ThirdBody { pieces: Vec<Piece>, below: Below },
+    ThirdBody {
+        pieces: Vec<Piece>,
+        below: Below,
+    },
     /// Su & Chesnavich 1982.
-    Capture { langevin: f64, x_300k: f64, range: Range },
+    Capture {
+        langevin: f64,
+        x_300k: f64,
+        range: Range,
+    },
     /// Troe-type falloff. `low` and `high` carry (at_300k, slope, barrier).
-    Falloff { low: [f64; 3], high: [f64; 3], centre: f64, range: Range },
+    Falloff {
+        low: [f64; 3],
+        high: [f64; 3],
+        centre: f64,
+        range: Range,
+    },
     /// Photoprocess. `rates`: one per [`Chemistry::spectra`], None where the file gives none.
-    Light { rates: Vec<Option<f64>>, extinction: f64, shield: Option<usize> },
+    Light {
+        rates: Vec<Option<f64>>,
+        extinction: f64,
+        shield: Option<usize>,
+    },
     /// value x (zeta_cosmic + zeta_xray + zeta_nuclides).
-    Ionisation { value: f64 },
+    Ionisation {
+        value: f64,
+    },
     /// value x (zeta_cosmic + zeta_xray) x (reference dust area / dust area).
-    SecondaryLight { value: f64 },
+    SecondaryLight {
+        value: f64,
+    },
     /// H2 on grains, first order in H.
-    HydrogenFormation { at_100k: f64, slope: f64 },
+    HydrogenFormation {
+        at_100k: f64,
+        slope: f64,
+    },
     /// Charged gas particle (charge, mass in amu) sticking to a grain of charge `grain`.
-    Charging { sticking: f64, charge: i32, mass: f64, grain: i32, share: f64 },
+    Charging {
+        sticking: f64,
+        charge: i32,
+        mass: f64,
+        grain: i32,
+        share: f64,
+    },
     /// Gas species sticking to grains. `hydrogen`: sticking of H, less the share that forms H2.
-    Accretion { mass: f64, hydrogen: bool },
-    ThermalDesorption { binding: Binding },
-    CosmicDesorption { binding: Binding },
-    Photodesorption { yields: f64 },
+    Accretion {
+        mass: f64,
+        hydrogen: bool,
+    },
+    ThermalDesorption {
+        binding: Binding,
+    },
+    CosmicDesorption {
+        binding: Binding,
+    },
+    Photodesorption {
+        yields: f64,
+    },
     /// Langmuir-Hinshelwood. `own.share` includes the branching and the leaving (or staying)
     /// share; `channels` are all channels of the pair, this one included, with their branching.
     Surface {

@@ -54,14 +54,30 @@ impl Entry {
     pub fn place(&self, field: &str) -> String {
         format!("{}[{}].{field}", self.group.key(), self.index)
     }
+
+    /// The reactants in an order that does not depend on how they are written.
+    pub fn reactant_set(&self) -> Vec<usize> {
+        sorted(&self.reactants)
+    }
+
+    /// The products likewise.
+    pub fn product_set(&self) -> Vec<usize> {
+        sorted(&self.products)
+    }
+}
+
+fn sorted(places: &[usize]) -> Vec<usize> {
+    let mut places = places.to_vec();
+    places.sort_unstable();
+    places
 }
 
 /// Reads and checks a network from the text of the file `path`; reports all errors it can find.
 pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
     let positions = yaml::positions(path, text).map_err(|error| vec![error])?;
     check_layout(path, &positions)?;
-    let file: NetworkFile = yaml::fill(path, text, &positions)
-        .map_err(|error| vec![with_change(error, &positions)])?;
+    let file: NetworkFile =
+        yaml::fill(path, text, &positions).map_err(|error| vec![with_change(error, &positions)])?;
     let mut findings = Findings::new(path, &positions);
     let roster = Roster::collect(&file, &mut findings);
     let entries = entries(&file, &roster, &mut findings);
@@ -108,10 +124,14 @@ fn check_layout(path: &Path, positions: &Positions) -> Result<(), Vec<InputError
 
 /// Adds the change (or name) to an error of form, whose entry is only a key path.
 fn with_change(mut error: InputError, positions: &Positions) -> InputError {
-    let Some(end) = error.entry.find(']') else { return error };
+    let Some(end) = error.entry.find(']') else {
+        return error;
+    };
     let item = &error.entry[..=end];
     let named = ["change", "name", "species", "ion"];
-    let name = named.iter().find_map(|key| positions.text(&format!("{item}.{key}")));
+    let name = named
+        .iter()
+        .find_map(|key| positions.text(&format!("{item}.{key}")));
     if let Some(name) = name {
         error.entry = format!("{name} ({})", error.entry);
     }
@@ -119,7 +139,10 @@ fn with_change(mut error: InputError, positions: &Positions) -> InputError {
 }
 
 fn entries(file: &NetworkFile, roster: &Roster, findings: &mut Findings) -> Vec<Entry> {
-    groups::heads(file).iter().filter_map(|head| entry(head, roster, findings)).collect()
+    groups::heads(file)
+        .iter()
+        .filter_map(|head| entry(head, roster, findings))
+        .collect()
 }
 
 /// Finds the species of one line; None with an error noted where that fails.
@@ -191,7 +214,11 @@ fn photodesorption(
         let mut channels = Vec::new();
         for (j, channel) in ice.photodesorption.iter().enumerate() {
             let place = format!("ices[{i}].photodesorption[{j}].products");
-            let entry = format!("{} -> {}", names::adsorbed_name(&ice.species), channel.products);
+            let entry = format!(
+                "{} -> {}",
+                names::adsorbed_name(&ice.species),
+                channel.products
+            );
             let products = products(&channel.products, roster, &place, &entry, findings);
             if let (Some(products), Some(from)) = (&products, roster.find(&ice.species)) {
                 check::desorbed(products, from, roster, &place, &entry, findings);
@@ -213,7 +240,13 @@ fn neutralisation(
     for (i, line) in dust.neutralisation.iter().enumerate() {
         let place = format!("dust.neutralisation[{i}]");
         let entry = format!("{} -> {} (on dust)", line.ion, line.becomes);
-        let ion = resolve(std::slice::from_ref(&line.ion), roster, &place, &entry, findings);
+        let ion = resolve(
+            std::slice::from_ref(&line.ion),
+            roster,
+            &place,
+            &entry,
+            findings,
+        );
         let becomes = products(&line.becomes, roster, &place, &entry, findings);
         if let (Some(ion), Some(becomes)) = (ion, becomes) {
             check::neutralised(ion[0], &becomes, roster, &place, &entry, findings);

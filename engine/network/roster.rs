@@ -52,11 +52,23 @@ impl Roster {
             return Ok(place);
         }
         let (found, expected) = match names::species(name)?.phase {
-            Phase::Ice => ("without a line in `ices`", "an adsorbed species that `ices` lists"),
-            Phase::Dust => ("as a written species", "gas or ice; reactions with dust are generated"),
-            _ => ("which is not in `species`", "a species that `species` lists"),
+            Phase::Ice => (
+                "without a line in `ices`",
+                "an adsorbed species that `ices` lists",
+            ),
+            Phase::Dust => (
+                "as a written species",
+                "gas or ice; reactions with dust are generated",
+            ),
+            _ => (
+                "which is not in `species`",
+                "a species that `species` lists",
+            ),
         };
-        Err(NameError { found: format!("`{name}` {found}"), expected: expected.to_string() })
+        Err(NameError {
+            found: format!("`{name}` {found}"),
+            expected: expected.to_string(),
+        })
     }
 
     /// Whether the species at this place is adsorbed.
@@ -67,7 +79,9 @@ impl Roster {
     /// The gas form of a species (itself if it is gas).
     pub fn gas_form(&self, place: usize) -> usize {
         let name = &self.species[place].name;
-        names::gas_name(name).and_then(|gas| self.find(gas)).unwrap_or(place)
+        names::gas_name(name)
+            .and_then(|gas| self.find(gas))
+            .unwrap_or(place)
     }
 
     /// The adsorbed form of a neutral gas species of this roster.
@@ -83,12 +97,22 @@ impl Roster {
         let partner = &self.species[place];
         if partner.charge != 0 || partner.atoms.is_empty() {
             let found = found(", which carries a charge");
-            return Err(NameError { found, expected: expected("a neutral species") });
+            return Err(NameError {
+                found,
+                expected: expected("a neutral species"),
+            });
         }
         names::species(&names::adsorbed_name(gas))
     }
 
-    fn take(&mut self, species: Species, place: &str, entry: &str, list: &str, findings: &mut Findings) {
+    fn take(
+        &mut self,
+        species: Species,
+        place: &str,
+        entry: &str,
+        list: &str,
+        findings: &mut Findings,
+    ) {
         if self.find(&species.name).is_some() {
             let found = format!("`{}` a second time in `{list}`", species.name);
             return findings.add(place, entry, found, "every species once");
@@ -105,5 +129,8 @@ fn gas_species(name: &str) -> Result<Species, NameError> {
         Phase::Dust => "gas species; dust is generated",
         _ => return Ok(species),
     };
-    Err(NameError { found: format!("`{name}`"), expected: expected.to_string() })
+    Err(NameError {
+        found: format!("`{name}`"),
+        expected: expected.to_string(),
+    })
 }

@@ -16,8 +16,11 @@ const ENDOTHERMIC: f64 = 8.0;
 const CAPTURE_MARGIN: f64 = 1.3;
 /// What two neutrals can reach at most, cm^3 s^-1.
 const NEUTRAL_LIMIT: f64 = 1e-9;
+/// Coefficients scaled to a limit and rounded in the file are not above it.
+const ROUNDING: f64 = 1.01;
 /// Ratio of two pieces at their joint that still counts as meeting.
 const JUMP: f64 = 1.05;
+
 
 /// All warnings, by line.
 pub(super) fn all(network: &Network) -> Vec<Warning> {
@@ -27,6 +30,7 @@ pub(super) fn all(network: &Network) -> Vec<Warning> {
     above_limit(network, &mut warnings);
     for entry in &network.entries {
         endothermic(network, entry, &mut warnings);
+        changes_nothing(entry, &mut warnings);
     }
     jumps(network, &mut warnings);
     warnings.sort_by_key(|warning| warning.line);
@@ -42,7 +46,12 @@ fn never_formed_or_destroyed(network: &Network, warnings: &mut Vec<Warning>) {
         let mut warn = |kind, what: &str| {
             let line = network.line(&format!("species[{place}]"));
             let text = format!("nothing {what} it");
-            warnings.push(Warning { line, entry: format!("species {name}"), text, kind });
+            warnings.push(Warning {
+                line,
+                entry: format!("species {name}"),
+                text,
+                kind,
+            });
         };
         if !formed.contains(&place) {
             warn(WarningKind::NeverFormed, "forms");
@@ -84,9 +93,11 @@ fn formed_and_destroyed(network: &Network) -> (HashSet<usize>, HashSet<usize>) {
     }
     if let (Some(electron), Some(dust)) = (electron, &network.file.dust) {
         change(&[electron], &[]);
-        if let (Some(h), Some(h2), true) =
-            (roster.find("H"), roster.find("H2"), dust.hydrogen_formation.is_some())
-        {
+        if let (Some(h), Some(h2), true) = (
+            roster.find("H"),
+            roster.find("H2"),
+            dust.hydrogen_formation.is_some(),
+        ) {
             change(&[h, h], &[h2]);
         }
     }
@@ -137,8 +148,9 @@ fn coefficient<'a>(network: &'a Network, entry: &Entry) -> Option<Coefficient<'a
             let below = line.below.unwrap_or(Below::Extend);
             let high = &line.high;
             Some(Box::new(move |t| {
-                limits::evaluated_at(line.valid, below, t)
-                    .map_or(0.0, |at| limits::power_law(high.at_300k, high.slope, high.barrier, at))
+                limits::evaluated_at(line.valid, below, t).map_or(0.0, |at| {
+                    limits::power_law(high.at_300k, high.slope, high.barrier, at)
+                })
             }))
         }
         _ => None,
@@ -149,10 +161,14 @@ fn coefficient<'a>(network: &'a Network, entry: &Entry) -> Option<Coefficient<'a
 fn above_limit(network: &Network, warnings: &mut Vec<Warning>) {
     let mut pairs: BTreeMap<[usize; 2], Vec<(&Entry, Coefficient)>> = BTreeMap::new();
     for entry in &network.entries {
-        let (Some(coefficient), &[a, b]) = (coefficient(network, entry), &entry.reactants[..]) else {
+        let (Some(coefficient), &[a, b]) = (coefficient(network, entry), &entry.reactants[..])
+        else {
             continue;
         };
-        pairs.entry([a.min(b), a.max(b)]).or_default().push((entry, coefficient));
+        pairs
+            .entry([a.min(b), a.max(b)])
+            .or_default()
+            .push((entry, coefficient));
     }
     for ([a, b], channels) in &pairs {
         let pair = [&network.roster.species[*a], &network.roster.species[*b]];
@@ -162,24 +178,42 @@ fn above_limit(network: &Network, warnings: &mut Vec<Warning>) {
             Partner::Neutrals => [10.0, 30.0, 100.0, 300.0, 1000.0]
                 .map(|t| (t, total(t), NEUTRAL_LIMIT))
                 .into_iter()
-                .find(|(_, k, limit)| k > limit),
-            Partner::Ion { neutral, reduced_mass } => {
+                .find(|(_, k, limit)| *k > ROUNDING * limit),
+            Partner::Ion {
+                neutral,
+                reduced_mass,
+            } => {
                 let place = if neutral == 0 { *a } else { *b };
                 let line = &network.file.species[place];
-                let Some(polarisability) = line.polarisability.filter(|p| *p > 0.0) else { continue };
+                let Some(polarisability) = line.polarisability.filter(|p| *p > 0.0) else {
+                    continue;
+                };
                 let dipole = line.dipole.unwrap_or(0.0);
                 [10.0, 300.0]
-                    .map(|t| (t, total(t), CAPTURE_MARGIN * limits::capture(polarisability, dipole, reduced_mass, t)))
+                    .map(|t| {
+                        (
+                            t,
+                            total(t),
+                            CAPTURE_MARGIN
+                                * limits::capture(polarisability, dipole, reduced_mass, t),
+                        )
+                    })
                     .into_iter()
-                    .find(|(_, k, limit)| k > limit)
+                    .find(|(_, k, limit)| *k > ROUNDING * limit)
             }
         };
         if let (Some((t, k, limit)), Some((first, _))) = (excess, channels.first()) {
-            let all = if channels.len() > 1 { " (all channels of the pair)" } else { "" };
+            let all = if channels.len() > 1 {
+                " (all channels of the pair)"
+            } else {
+                ""
+            };
             warnings.push(Warning {
                 line: first.line,
                 entry: first.change.clone(),
-                text: format!("{k:.2e} cm^3 s^-1 at {t} K{all}, above the limit of collisions {limit:.2e}"),
+                text: format!(
+                    "{k:.2e} cm^3 s^-1 at {t} K{all}, above the limit of collisions {limit:.2e}"
+                ),
                 kind: WarningKind::AboveCollisionLimit,
             });
         }
@@ -192,7 +226,10 @@ enum Partner {
     None,
     Neutrals,
     /// One ion; `neutral` is the place (0 or 1) of the other. amu.
-    Ion { neutral: usize, reduced_mass: f64 },
+    Ion {
+        neutral: usize,
+        reduced_mass: f64,
+    },
 }
 
 fn neutral_of(pair: [&Species; 2]) -> Partner {
@@ -201,8 +238,14 @@ fn neutral_of(pair: [&Species; 2]) -> Partner {
     match (pair[0].charge, pair[1].charge) {
         (0, 0) => Partner::Neutrals,
         _ if electron => Partner::None,
-        (0, _) => Partner::Ion { neutral: 0, reduced_mass },
-        (_, 0) => Partner::Ion { neutral: 1, reduced_mass },
+        (0, _) => Partner::Ion {
+            neutral: 0,
+            reduced_mass,
+        },
+        (_, 0) => Partner::Ion {
+            neutral: 1,
+            reduced_mass,
+        },
         _ => Partner::None,
     }
 }
@@ -213,14 +256,21 @@ fn endothermic(network: &Network, entry: &Entry, warnings: &mut Vec<Warning>) {
         return;
     }
     let heat = |side: &[usize]| -> Option<f64> {
-        side.iter().map(|s| network.file.species.get(*s)?.enthalpy).sum()
+        side.iter()
+            .map(|s| network.file.species.get(*s)?.enthalpy)
+            .sum()
     };
-    let (Some(before), Some(after)) = (heat(&entry.reactants), heat(&entry.products)) else { return };
+    let (Some(before), Some(after)) = (heat(&entry.reactants), heat(&entry.products)) else {
+        return;
+    };
     if after - before > ENDOTHERMIC {
         warnings.push(Warning {
             line: entry.line,
             entry: entry.change.clone(),
-            text: format!("no barrier, but endothermic by {:.1} kJ/mol", after - before),
+            text: format!(
+                "no barrier, but endothermic by {:.1} kJ/mol",
+                after - before
+            ),
             kind: WarningKind::Endothermic,
         });
     }
@@ -240,6 +290,18 @@ fn barrier(network: &Network, entry: &Entry) -> Option<f64> {
             Some(line.low.barrier.max(line.high.barrier))
         }
         Group::Light | Group::Cosmic | Group::Surface => None,
+    }
+}
+
+/// Reactions that give back what they take.
+fn changes_nothing(entry: &Entry, warnings: &mut Vec<Warning>) {
+    if entry.reactant_set() == entry.product_set() {
+        warnings.push(Warning {
+            line: entry.line,
+            entry: entry.change.clone(),
+            text: "the same species on both sides: it changes nothing".to_string(),
+            kind: WarningKind::ChangesNothing,
+        });
     }
 }
 

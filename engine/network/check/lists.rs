@@ -30,14 +30,31 @@ fn sources(file: &NetworkFile, findings: &mut Findings) {
         let place = format!("{}[{}]", head.group.key(), head.index);
         used.push((place, head.change.to_string(), head.source));
     }
-    for (i, line) in file.species.iter().enumerate().filter(|(_, line)| !line.source.is_empty()) {
-        used.push((format!("species[{i}]"), format!("species {}", line.name), &line.source));
+    for (i, line) in file
+        .species
+        .iter()
+        .enumerate()
+        .filter(|(_, line)| !line.source.is_empty())
+    {
+        used.push((
+            format!("species[{i}]"),
+            format!("species {}", line.name),
+            &line.source,
+        ));
     }
     for (i, line) in file.compositions.iter().enumerate() {
-        used.push((format!("compositions[{i}]"), format!("composition {}", line.name), &line.source));
+        used.push((
+            format!("compositions[{i}]"),
+            format!("composition {}", line.name),
+            &line.source,
+        ));
     }
     for (i, line) in file.shielding.iter().enumerate() {
-        used.push((format!("shielding[{i}]"), format!("shielding {}", line.name), &line.source));
+        used.push((
+            format!("shielding[{i}]"),
+            format!("shielding {}", line.name),
+            &line.source,
+        ));
     }
     for (i, line) in file.ices.iter().enumerate() {
         let entry = format!("ice {}", line.species);
@@ -46,7 +63,11 @@ fn sources(file: &NetworkFile, findings: &mut Findings) {
             used.push((format!("ices[{i}].pure"), entry.clone(), &pure.source));
         }
         for (j, channel) in line.photodesorption.iter().enumerate() {
-            used.push((format!("ices[{i}].photodesorption[{j}]"), entry.clone(), &channel.source));
+            used.push((
+                format!("ices[{i}].photodesorption[{j}]"),
+                entry.clone(),
+                &channel.source,
+            ));
         }
     }
     if let Some(dust) = &file.dust {
@@ -62,7 +83,12 @@ fn sources(file: &NetworkFile, findings: &mut Findings) {
     for (place, entry, source) in used {
         if !file.sources.contains_key(source) {
             let found = format!("source `{source}`");
-            findings.add(&format!("{place}.source"), entry, found, "a key that `sources` explains");
+            findings.add(
+                &format!("{place}.source"),
+                entry,
+                found,
+                "a key that `sources` explains",
+            );
         }
     }
 }
@@ -72,10 +98,19 @@ fn spectra(file: &NetworkFile, findings: &mut Findings) {
     if file.spectra.contains_key(STANDARD_SPECTRUM) {
         let found = format!("`{STANDARD_SPECTRUM}`");
         let place = format!("spectra.{STANDARD_SPECTRUM}");
-        findings.add(&place, "spectra", found, "other names; this spectrum is built in");
+        findings.add(
+            &place,
+            "spectra",
+            found,
+            "other names; this spectrum is built in",
+        );
     }
     for (i, line) in file.light.iter().enumerate() {
-        for name in line.spectra.keys().filter(|name| !file.spectra.contains_key(*name)) {
+        for name in line
+            .spectra
+            .keys()
+            .filter(|name| !file.spectra.contains_key(*name))
+        {
             let expected = match name.as_str() {
                 STANDARD_SPECTRUM => "`rate`, which is the rate in this spectrum".to_string(),
                 _ => "a key that `spectra` explains".to_string(),
@@ -92,7 +127,12 @@ fn shields(file: &NetworkFile, findings: &mut Findings) {
         let Some(shield) = &line.shield else { continue };
         if !file.shielding.iter().any(|known| known.name == *shield) {
             let place = format!("light[{i}].shield");
-            findings.add(&place, &line.change, format!("shield `{shield}`"), "a name from `shielding`");
+            findings.add(
+                &place,
+                &line.change,
+                format!("shield `{shield}`"),
+                "a name from `shielding`",
+            );
         }
     }
 }
@@ -120,14 +160,35 @@ fn shielding(
     roster: &Roster,
     findings: &mut Findings,
 ) {
-    let (place, entry) = (format!("shielding[{index}]"), format!("shielding {}", line.name));
-    if file.shielding[..index].iter().any(|earlier| earlier.name == line.name) {
-        findings.add(&place, &entry, format!("`{}` a second time", line.name), "every name once");
+    let (place, entry) = (
+        format!("shielding[{index}]"),
+        format!("shielding {}", line.name),
+    );
+    if file.shielding[..index]
+        .iter()
+        .any(|earlier| earlier.name == line.name)
+    {
+        findings.add(
+            &place,
+            &entry,
+            format!("`{}` a second time", line.name),
+            "every name once",
+        );
     }
     match roster.resolve(&line.column) {
-        Err(error) => findings.add(&format!("{place}.column"), &entry, error.found, error.expected),
+        Err(error) => findings.add(
+            &format!("{place}.column"),
+            &entry,
+            error.found,
+            error.expected,
+        ),
         Ok(species) if roster.is_ice(species) => {
-            findings.add(&format!("{place}.column"), &entry, "an adsorbed species", "a gas species");
+            findings.add(
+                &format!("{place}.column"),
+                &entry,
+                "an adsorbed species",
+                "a gas species",
+            );
         }
         Ok(_) => {}
     }
@@ -136,7 +197,12 @@ fn shielding(
         axis(&line.log_h2, "log_h2", &place, &entry, findings);
         table(line, &place, &entry, findings);
     } else if !(line.log_column.is_empty() && line.log_h2.is_empty() && line.factor.is_empty()) {
-        findings.add(&place, &entry, "a table beside another law", "`law: table`, or no table");
+        findings.add(
+            &place,
+            &entry,
+            "a table beside another law",
+            "`law: table`, or no table",
+        );
     }
 }
 
@@ -167,7 +233,10 @@ fn table(line: &ShieldingLine, place: &str, entry: &str, findings: &mut Findings
             let expected = format!("{columns}, one per value of `log_column`");
             findings.add(&place, entry, found, expected);
         }
-        if let Some(wrong) = row.iter().find(|factor| !(**factor > 0.0 && factor.is_finite())) {
+        if let Some(wrong) = row
+            .iter()
+            .find(|factor| !(**factor > 0.0 && factor.is_finite()))
+        {
             let found = format!("factor {wrong:e} in row {}", i + 1);
             findings.add(&place, entry, found, "factors above 0");
         }
@@ -177,9 +246,20 @@ fn table(line: &ShieldingLine, place: &str, entry: &str, findings: &mut Findings
 /// Compositions name known species with abundances that are not negative.
 fn compositions(file: &NetworkFile, roster: &Roster, findings: &mut Findings) {
     for (i, line) in file.compositions.iter().enumerate() {
-        let (place, entry) = (format!("compositions[{i}]"), format!("composition {}", line.name));
-        if file.compositions[..i].iter().any(|earlier| earlier.name == line.name) {
-            findings.add(&place, &entry, format!("`{}` a second time", line.name), "every name once");
+        let (place, entry) = (
+            format!("compositions[{i}]"),
+            format!("composition {}", line.name),
+        );
+        if file.compositions[..i]
+            .iter()
+            .any(|earlier| earlier.name == line.name)
+        {
+            findings.add(
+                &place,
+                &entry,
+                format!("`{}` a second time", line.name),
+                "every name once",
+            );
         }
         for (name, abundance) in &line.abundances {
             let place = format!("{place}.abundances");
@@ -190,7 +270,14 @@ fn compositions(file: &NetworkFile, roster: &Roster, findings: &mut Findings) {
                 };
                 findings.add(&format!("{place}.{name}"), &entry, error.found, expected);
             }
-            number(*abundance, Must::NotBeNegative, name, &place, &entry, findings);
+            number(
+                *abundance,
+                Must::NotBeNegative,
+                name,
+                &place,
+                &entry,
+                findings,
+            );
         }
     }
 }

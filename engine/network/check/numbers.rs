@@ -39,7 +39,12 @@ pub(super) fn number(
         Must::BeShare => ((0.0..=1.0).contains(&value), "a share from 0 to 1"),
     };
     if !(good && value.is_finite()) {
-        findings.add(&format!("{place}.{field}"), entry, format!("{field} {value:e}"), expected);
+        findings.add(
+            &format!("{place}.{field}"),
+            entry,
+            format!("{field} {value:e}"),
+            expected,
+        );
     }
 }
 
@@ -50,7 +55,14 @@ pub(super) fn all(file: &NetworkFile, findings: &mut Findings) {
     for (index, line) in file.capture.iter().enumerate() {
         let place = place(Group::Capture, index);
         let mut must = |value, field| {
-            number(value, Must::NotBeNegative, field, &place, &line.change, findings);
+            number(
+                value,
+                Must::NotBeNegative,
+                field,
+                &place,
+                &line.change,
+                findings,
+            );
         };
         must(line.langevin, "langevin");
         must(line.x_300k, "x_300K");
@@ -89,13 +101,20 @@ pub(super) fn uncertainty(head: &Head, findings: &mut Findings) {
 pub(super) fn factor(within: f64, place: &str, entry: &str, findings: &mut Findings) {
     if !(within >= 1.0 && within.is_finite()) {
         let found = format!("within {within:e}");
-        findings.add(&format!("{place}.within"), entry, found, "a factor of at least 1");
+        findings.add(
+            &format!("{place}.within"),
+            entry,
+            found,
+            "a factor of at least 1",
+        );
     }
 }
 
 fn power_law(line: &GasLine, place: &str, findings: &mut Findings) {
     let change = &line.change;
-    let single = [line.at_300k, line.slope, line.barrier].iter().any(Option::is_some)
+    let single = [line.at_300k, line.slope, line.barrier]
+        .iter()
+        .any(Option::is_some)
         || line.valid.is_some();
     let form = "either `at_300K` (slope, barrier) with `valid`, or `pieces`";
     match (single, line.pieces.is_empty()) {
@@ -111,10 +130,35 @@ fn power_law(line: &GasLine, place: &str, findings: &mut Findings) {
     }
     let pieces = groups::pieces(line);
     for (i, piece) in pieces.iter().enumerate() {
-        let place = if single { place.to_string() } else { format!("{place}.pieces[{i}]") };
-        number(piece.at_300k, Must::NotBeNegative, "at_300K", &place, change, findings);
-        number(piece.slope, Must::BeFinite, "slope", &place, change, findings);
-        number(piece.barrier, Must::BeFinite, "barrier", &place, change, findings);
+        let place = if single {
+            place.to_string()
+        } else {
+            format!("{place}.pieces[{i}]")
+        };
+        number(
+            piece.at_300k,
+            Must::NotBeNegative,
+            "at_300K",
+            &place,
+            change,
+            findings,
+        );
+        number(
+            piece.slope,
+            Must::BeFinite,
+            "slope",
+            &place,
+            change,
+            findings,
+        );
+        number(
+            piece.barrier,
+            Must::BeFinite,
+            "barrier",
+            &place,
+            change,
+            findings,
+        );
         range(piece.valid, "valid", &place, change, findings);
     }
     joints(&pieces, place, change, findings);
@@ -132,14 +176,22 @@ fn joints(pieces: &[Piece], place: &str, change: &str, findings: &mut Findings) 
             continue;
         }
         let found = if upper[0] < lower[0] {
-            format!("pieces that descend: [{}, {}] before [{}, {}]", lower[0], lower[1], upper[0], upper[1])
+            format!(
+                "pieces that descend: [{}, {}] before [{}, {}]",
+                lower[0], lower[1], upper[0], upper[1]
+            )
         } else if gap < 0.0 {
             format!("pieces that overlap from {} to {} K", upper[0], lower[1])
         } else {
             format!("a gap between pieces from {} to {} K", lower[1], upper[0])
         };
         let place = format!("{place}.pieces[{}].valid", i + 1);
-        findings.add(&place, change, found, "pieces that ascend, each starting where the last ends");
+        findings.add(
+            &place,
+            change,
+            found,
+            "pieces that ascend, each starting where the last ends",
+        );
     }
 }
 
@@ -163,24 +215,64 @@ fn below(low: f64, below: Option<Below>, place: &str, entry: &str, findings: &mu
 
 fn limit(line: &LimitLine, place: &str, change: &str, findings: &mut Findings) {
     // Both limits are divided by each other, so neither may be 0.
-    number(line.at_300k, Must::BePositive, "at_300K", place, change, findings);
+    number(
+        line.at_300k,
+        Must::BePositive,
+        "at_300K",
+        place,
+        change,
+        findings,
+    );
     number(line.slope, Must::BeFinite, "slope", place, change, findings);
-    number(line.barrier, Must::BeFinite, "barrier", place, change, findings);
+    number(
+        line.barrier,
+        Must::BeFinite,
+        "barrier",
+        place,
+        change,
+        findings,
+    );
 }
 
 fn centre(value: f64, place: &str, change: &str, findings: &mut Findings) {
     if !(value > 0.0 && value <= 1.0) {
         let found = format!("centre {value:e}");
-        findings.add(&format!("{place}.centre"), change, found, "a factor above 0, at most 1");
+        findings.add(
+            &format!("{place}.centre"),
+            change,
+            found,
+            "a factor above 0, at most 1",
+        );
     }
 }
 
 fn light(line: &LightLine, place: &str, findings: &mut Findings) {
-    number(line.rate, Must::NotBeNegative, "rate", place, &line.change, findings);
-    number(line.extinction, Must::NotBeNegative, "extinction", place, &line.change, findings);
+    number(
+        line.rate,
+        Must::NotBeNegative,
+        "rate",
+        place,
+        &line.change,
+        findings,
+    );
+    number(
+        line.extinction,
+        Must::NotBeNegative,
+        "extinction",
+        place,
+        &line.change,
+        findings,
+    );
     for (spectrum, rate) in &line.spectra {
         let place = format!("{place}.spectra");
-        number(*rate, Must::NotBeNegative, spectrum, &place, &line.change, findings);
+        number(
+            *rate,
+            Must::NotBeNegative,
+            spectrum,
+            &place,
+            &line.change,
+            findings,
+        );
     }
 }
 
@@ -188,12 +280,31 @@ fn cosmic(line: &CosmicLine, place: &str, findings: &mut Findings) {
     let both = "exactly one of `direct` and `secondary`";
     match (line.direct, line.secondary) {
         (Some(_), Some(_)) => findings.add(place, &line.change, "`direct` and `secondary`", both),
-        (None, None) => findings.add(place, &line.change, "neither `direct` nor `secondary`", both),
+        (None, None) => findings.add(
+            place,
+            &line.change,
+            "neither `direct` nor `secondary`",
+            both,
+        ),
         (Some(value), None) => {
-            number(value, Must::NotBeNegative, "direct", place, &line.change, findings);
+            number(
+                value,
+                Must::NotBeNegative,
+                "direct",
+                place,
+                &line.change,
+                findings,
+            );
         }
         (None, Some(value)) => {
-            number(value, Must::NotBeNegative, "secondary", place, &line.change, findings);
+            number(
+                value,
+                Must::NotBeNegative,
+                "secondary",
+                place,
+                &line.change,
+                findings,
+            );
         }
     }
 }

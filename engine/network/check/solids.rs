@@ -13,12 +13,7 @@ use std::collections::BTreeMap;
 /// How far shares may be off their sum.
 const SHARES: f64 = 1e-6;
 
-pub(super) fn all(
-    file: &NetworkFile,
-    roster: &Roster,
-    entries: &[Entry],
-    findings: &mut Findings,
-) {
+pub(super) fn all(file: &NetworkFile, roster: &Roster, entries: &[Entry], findings: &mut Findings) {
     for (i, line) in file.ices.iter().enumerate() {
         ice(line, &format!("ices[{i}]"), findings);
     }
@@ -37,18 +32,48 @@ fn ice(line: &IceLine, place: &str, findings: &mut Findings) {
     };
     positive(line.energy, "energy");
     positive(line.prefactor, "prefactor");
-    line.hop_energy.map(|value| positive(value, "hop_energy"));
+    if let Some(value) = line.hop_energy {
+        positive(value, "hop_energy");
+    }
     if let Some(value) = line.hop_barrier {
-        number(value, Must::NotBeNegative, "hop_barrier", place, &entry, findings);
+        number(
+            value,
+            Must::NotBeNegative,
+            "hop_barrier",
+            place,
+            &entry,
+            findings,
+        );
     }
     if let Some(pure) = &line.pure {
         let place = format!("{place}.pure");
-        number(pure.energy, Must::BePositive, "energy", &place, &entry, findings);
-        number(pure.prefactor, Must::BePositive, "prefactor", &place, &entry, findings);
+        number(
+            pure.energy,
+            Must::BePositive,
+            "energy",
+            &place,
+            &entry,
+            findings,
+        );
+        number(
+            pure.prefactor,
+            Must::BePositive,
+            "prefactor",
+            &place,
+            &entry,
+            findings,
+        );
     }
     for (j, channel) in line.photodesorption.iter().enumerate() {
         let place = format!("{place}.photodesorption[{j}]");
-        number(channel.yields, Must::NotBeNegative, "yield", &place, &entry, findings);
+        number(
+            channel.yields,
+            Must::NotBeNegative,
+            "yield",
+            &place,
+            &entry,
+            findings,
+        );
     }
     if let Some(within) = line.within {
         factor(within, place, &entry, findings);
@@ -57,7 +82,14 @@ fn ice(line: &IceLine, place: &str, findings: &mut Findings) {
 
 fn surface(line: &SurfaceLine, place: &str, findings: &mut Findings) {
     let change = &line.change;
-    number(line.barrier, Must::NotBeNegative, "barrier", place, change, findings);
+    number(
+        line.barrier,
+        Must::NotBeNegative,
+        "barrier",
+        place,
+        change,
+        findings,
+    );
     let fields = [
         (line.width, Must::BePositive, "width"),
         (line.share, Must::BeShare, "share"),
@@ -75,22 +107,30 @@ fn surface(line: &SurfaceLine, place: &str, findings: &mut Findings) {
     }
 }
 
-/// The channels of one pair that share a barrier cannot take more than every attempt. Channels of
-/// different barriers compete by how often they cross them.
+/// The channels of one pair that share a barrier cannot take more than every attempt. (Channels of
+/// different barriers compete by how often they cross them.)
 fn pair_shares(file: &NetworkFile, entries: &[Entry], findings: &mut Findings) {
     let mut pairs: BTreeMap<(Vec<usize>, u64), (f64, Vec<&Entry>)> = BTreeMap::new();
     for entry in entries.iter().filter(|entry| entry.group == Group::Surface) {
-        let mut pair = entry.reactants.clone();
-        pair.sort_unstable();
         let line = &file.surface[entry.index];
-        let (sum, channels) = pairs.entry((pair, line.barrier.to_bits())).or_default();
+        let key = (entry.reactant_set(), line.barrier.to_bits());
+        let (sum, channels) = pairs.entry(key).or_default();
         *sum += line.share.unwrap_or(1.0);
         channels.push(entry);
     }
     for (sum, channels) in pairs.values().filter(|(sum, _)| *sum > 1.0 + SHARES) {
-        let Some(last) = channels.last() else { continue };
-        let lines: Vec<String> = channels.iter().map(|entry| entry.line.to_string()).collect();
-        let found = format!("shares of this pair and barrier that sum to {sum} (lines {})", lines.join(", "));
+        let Some(last) = channels.last() else {
+            continue;
+        };
+        let lines: Vec<String> = channels
+            .iter()
+            .map(|entry| entry.line.to_string())
+            .collect();
+        let found = format!(
+            "shares of this pair and barrier that sum to {} (lines {})",
+            rounded(*sum),
+            lines.join(", ")
+        );
         let expected = "at most 1 (a share left out is 1)";
         findings.add(&last.place("share"), &last.change, found, expected);
     }
@@ -100,20 +140,48 @@ fn dust(file: &NetworkFile, roster: &Roster, findings: &mut Findings) {
     let Some(dust) = &file.dust else { return };
     if let Some(line) = &dust.hydrogen_formation {
         let (place, entry) = ("dust.hydrogen_formation", "H2 formation on dust");
-        number(line.at_100k, Must::NotBeNegative, "at_100K", place, entry, findings);
+        number(
+            line.at_100k,
+            Must::NotBeNegative,
+            "at_100K",
+            place,
+            entry,
+            findings,
+        );
         number(line.slope, Must::BeFinite, "slope", place, entry, findings);
-        for name in ["H", "H2"].iter().filter(|name| roster.find(name).is_none()) {
-            findings.add(place, entry, format!("no `{name}` in `species`"), "H and H2");
+        for name in ["H", "H2"]
+            .iter()
+            .filter(|name| roster.find(name).is_none())
+        {
+            findings.add(
+                place,
+                entry,
+                format!("no `{name}` in `species`"),
+                "H and H2",
+            );
         }
     }
     if roster.find("e-").is_none() {
-        findings.add("dust", "charge of dust", "no `e-` in `species`", "electrons, which charge dust");
+        findings.add(
+            "dust",
+            "charge of dust",
+            "no `e-` in `species`",
+            "electrons, which charge dust",
+        );
     }
-    for (value, field) in
-        [(dust.electron_sticking, "electron_sticking"), (dust.ion_sticking, "ion_sticking")]
-    {
+    for (value, field) in [
+        (dust.electron_sticking, "electron_sticking"),
+        (dust.ion_sticking, "ion_sticking"),
+    ] {
         if let Some(value) = value {
-            number(value, Must::BeShare, field, "dust", "charge of dust", findings);
+            number(
+                value,
+                Must::BeShare,
+                field,
+                "dust",
+                "charge of dust",
+                findings,
+            );
         }
     }
     for (i, line) in dust.neutralisation.iter().enumerate() {
@@ -134,9 +202,19 @@ fn ion_shares(file: &NetworkFile, findings: &mut Findings) {
     }
     for (ion, (sum, last)) in ions {
         if (sum - 1.0).abs() > SHARES {
-            let found = format!("shares that sum to {sum}");
+            let found = format!("shares that sum to {}", rounded(sum));
             let entry = format!("{ion} on dust");
-            findings.add(&format!("dust.neutralisation[{last}].share"), entry, found, "1");
+            findings.add(
+                &format!("dust.neutralisation[{last}].share"),
+                entry,
+                found,
+                "1",
+            );
         }
     }
+}
+
+/// A sum as the reader would write it, without the noise of binary fractions.
+fn rounded(sum: f64) -> f64 {
+    (sum * 1e6).round() / 1e6
 }
