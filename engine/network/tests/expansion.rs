@@ -2,7 +2,7 @@
 
 use super::{expanded, small};
 use crate::network::check::imbalance;
-use crate::network::model::{Cause, Chemistry, GrainOptions, Phase, Reaction, Species, SpeciesId};
+use crate::network::model::{Barrier, Cause, Chemistry, GrainOptions, Phase, Reaction, Species, SpeciesId};
 use crate::network::{expand, read};
 use std::collections::BTreeMap;
 use std::path::Path;
@@ -280,11 +280,13 @@ fn surface_causes_follow_line_and_options() {
                 first,
                 second,
                 same,
-                barrier,
-                width,
-                tunnelling_mass,
-                share,
-            } => (first, second, same, barrier, width, tunnelling_mass, share),
+                own,
+                channels,
+            } => {
+                assert!(channels.len() == 1, "one channel of the pair in this network");
+                let Barrier { height, width, mass, share } = own;
+                (first, second, same, height, width, mass, share)
+            }
             other => panic!("{other:?}"),
         };
     let (h, co, same, barrier, width, mass, share) = of("H(ads) + CO(ads) -> HCO(ads)", &options);
