@@ -74,13 +74,13 @@ def _attempt(system, x, now, times, method, relative):
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
-            for end in [times] if now == 0.0 else [[t] for t in times]:
-                out = solve_ivp(rhs, (now, end[-1]), x, method=method, t_eval=end, jac=jacobian,
+            for end in times:
+                out = solve_ivp(rhs, (now, end), x, method=method, t_eval=[end], jac=jacobian,
                                 rtol=relative, atol=SMALLEST, first_step=FIRST_STEP if now == 0.0 else None)
-                got.extend(out.y.T)
                 if not out.success:
                     return got, out.message
-                now, x = end[-1], got[-1]
+                now, x = end, out.y[:, -1]
+                got.append(x)
     except Crawls:
         return got, f"more than {EVALUATIONS} evaluations"
     return got, "done"
