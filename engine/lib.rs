@@ -70,13 +70,14 @@
 //!     run::run(&prepared, &output, &options, &Default::default(), &StopFlag::new())?;
 //! assert_eq!((summary.cells, summary.failed), (1, 0));
 //!
-//! // 8: what became of it. A molecule of CO meets a grain once in 50 yr here.
+//! // 8: what became of it. A molecule of CO meets a grain once in 51 yr here; in the end only what
+//! // cosmic rays knock off the ice is gas.
 //! let results = store::open(&output)?;
 //! let species = answers::select::species(results.header(), "CO,CO(ads)")?;
 //! let gas = results.history(0, species[0])?;
 //! let ice = results.history(0, species[1])?;
 //! assert_eq!(results.header().times_yr.len(), gas.len());
-//! assert!(gas[0] == 1.0e-4 && (3.0e-5..4.0e-5).contains(&gas[1]) && gas[2] < 1.0e-10);
+//! assert!(gas[0] == 1.0e-4 && (3.0e-5..4.0e-5).contains(&gas[1]) && gas[2] < 1.0e-8);
 //! assert!((gas[1] + ice[1] - 1.0e-4).abs() < 1.0e-13);
 //! # Ok::<(), Box<dyn std::error::Error>>(())
 //! ```
