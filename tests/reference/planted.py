@@ -11,12 +11,13 @@ import contextlib
 import copy
 import csv
 import sys
-from math import exp, log10, pi, sqrt
+from math import e, exp, log10, pi, sqrt
 
 from . import check, names, rates, system
 from .cells import read_case
+from .coefficients import Coefficient, Context
 
-_original = {module: dict(vars(module)) for module in (rates, names, system)}
+_original = {module: dict(vars(module)) for module in (rates, names, system, Context)}
 
 
 def _was(module, name):
@@ -53,6 +54,12 @@ def _proton_taken_off(name):
     return mass - 1.008 if name.endswith("+") and name != "H+" else mass
 
 
+def _accretion_of_all_hydrogen(self, reaction, line):
+    c, species = self.cell, line["species"]
+    sticking = rates.hydrogen_sticking(c.t_gas, c.t_dust) if species == "H" else 1.0
+    return Coefficient(rates.accretion(c.t_gas, names.mass(species), sticking, c.dust_area, c.n_h))
+
+
 # name: (module, function, what stands in its place)
 IN_FUNCTIONS = {
     "sign of the exponent of a barrier": (rates, "power_law", lambda t, a, s, c: a * (t / 300.0) ** s * exp(min(c / t, 500.0))),
@@ -80,14 +87,15 @@ IN_FUNCTIONS = {
     "attraction and repulsion exchanged": (rates, "coulomb_factor", lambda z, q, a, t: _was(rates, "coulomb_factor")(z, -q, a, t)),
     "grain radius in um": (rates, "coulomb_factor", lambda z, q, a, t: _was(rates, "coulomb_factor")(z, q, a * 1.0e4, t)),
     "hydrogen always sticks": (rates, "hydrogen_sticking", lambda g, d: 1.0),
-    "cosmic desorption at the temperature of the gas phase rule (zeta left out)": (rates, "cosmic_desorption", lambda e, n, z: _was(rates, "cosmic_desorption")(e, n, 1.3e-17)),
+    "hydrogen that forms H2 is accreted as well": (Context, "_accretion", _accretion_of_all_hydrogen),
+    "cosmic desorption without the ionisation rate": (rates, "cosmic_desorption", lambda energy, nu, z: _was(rates, "cosmic_desorption")(energy, nu, 1.3e-17)),
     "photodesorption by the cross-section, not a quarter of the surface": (rates, "photodesorption", lambda *a: 4.0 * _was(rates, "photodesorption")(*a)),
     "photons of energetic particles without the dust": (rates, "cosmic_photon_flux", lambda c, x, a: 1.4e20 * (c + x)),
     "sites of the cross-section": (rates, "sites", lambda a, n: a * n),
     "hopping attempt without the square root": (rates, "oscillation_frequency", _frequency_without_root),
-    "tunnelling without the factor 2 in the root": (rates, "tunnelling", lambda w, m, e: _was(rates, "tunnelling")(w, m / 2.0, e)),
+    "tunnelling without the factor 2 in the root": (rates, "tunnelling", lambda w, m, barrier: _was(rates, "tunnelling")(w, m / 2.0, barrier)),
     "heavier partner tunnels": (rates, "reduced_mass", lambda a, b: max(a, b)),
-    "no tunnelling": (rates, "over_or_through", lambda t, w, m, e: exp(-e / t)),
+    "no tunnelling": (rates, "over_or_through", lambda t, w, m, barrier: exp(-barrier / t)),
     "no competition with diffusion": (rates, "reaction_probability", lambda p, away: min(1.0, p / 1.0e12)),
     "a pair of one species counted twice": (rates, "meeting", lambda a, b, same, s: (a + b) / s),
     "every pair counted half": (rates, "meeting", lambda a, b, same, s: 0.5 * (a + b) / s),
@@ -135,7 +143,7 @@ def _two_body_unit(rows):
 def _natural_logarithm(rows):
     for r in rows:
         if r["log_centre"]:
-            r["log_centre"] = repr(float(r["log_centre"]) * log10(exp(1.0)) ** -1 + 0.0) if float(r["log_centre"]) else "-0.1"
+            r["log_centre"] = repr(float(r["log_centre"]) / log10(e))
 
 
 IN_ROWS = {
@@ -160,7 +168,7 @@ IN_STATE = {
     "falloff at the high-pressure limit": (rates, "falloff", lambda p, k, c: k),
     "molecules below the top layers desorb": (system, "top_layers", _no_dilution),
     "all layers react": (system, "encounters", _encounters_to_the_first_power),
-    "a third body of H2 alone at half weight": (system, "COLLIDERS", ("H", "He")),
+    "H2 left out of the third body": (system, "COLLIDERS", ("H", "He")),
 }
 
 

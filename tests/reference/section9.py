@@ -8,6 +8,7 @@ Settings of the table: see section9.yaml and section9.csv. Exit status 1 beyond 
 """
 
 import csv
+import re
 import sys
 from pathlib import Path
 
@@ -18,7 +19,7 @@ from . import names, rates
 from .cells import read_case
 from .integrate import LADDER, integrate_system
 from .coefficients import coefficients
-from .network import expand, read_yaml
+from .network import expand
 from .system import System
 
 HERE = Path(__file__).parent
@@ -26,13 +27,28 @@ TOLERANCE = 0.01
 COLUMNS = ((0, 1.0e5), (0, 1.0e6), (1, 1.0e5), (2, 1.0e5))  # cell and time (yr) of each column
 
 
-def strip(raw):
-    """The gas alone, and H2 formed on dust."""
-    kept = {k: v for k, v in raw.items() if k not in ("ices", "surface", "dust")}
-    kept["network"] = raw["network"] + "-gas"
-    kept["compositions"] = [c for c in raw["compositions"] if not any(map(names.is_adsorbed, c["abundances"]))]
-    kept["dust"] = {"hydrogen_formation": raw["dust"]["hydrogen_formation"]}
-    return kept
+def strip(text):
+    """The network file without ices, surface and grain charge; its lines as they stand. H2 still forms on dust."""
+    blocks = re.split(r"(?m)^(?=[A-Za-z_]+:)", text)
+    kept = []
+    for block in blocks:
+        key = block.split(":", 1)[0]
+        if key == "network":
+            block = block.rstrip("\n") + "-gas\n"
+        if key == "compositions":
+            head, *entries = re.split(r"(?m)^(?=\s*- )", block)
+            block = head + "".join(e for e in entries if names.ADSORBED not in e)
+        if key == "dust":
+            formation = re.search(r"(?m)^\s*hydrogen_formation:.*\n", block).group()
+            block = f"dust:\n{formation}  electron_sticking: 0.0\n"
+        if key not in ("ices", "surface"):
+            kept.append(block)
+    return "".join(kept)
+
+
+def gas_only(path):
+    """The stripped network, parsed."""
+    return YAML(typ="safe", pure=True).load(strip(Path(path).read_text(encoding="utf-8")))
 
 
 def table():
@@ -50,9 +66,9 @@ def shield_secondary(network, cell, found):
 
 
 def values(raw, secondary_shielded=False, ladder=LADDER):
-    """{species: four values} by integration here."""
+    """{species: four values} by integration here of a network without ices."""
     case = read_case(HERE / "section9.yaml")
-    network = expand(strip(raw), charge_states=0)
+    network = expand(raw, charge_states=0)
     out = {name: [0.0] * len(COLUMNS) for name in network.species}
     for c, cell in enumerate(case.cells):
         found = coefficients(case, network, cell)
@@ -94,11 +110,10 @@ def main(arguments=None):
     arguments = sys.argv[1:] if arguments is None else arguments
     match arguments:
         case ["strip", source, target]:
-            with open(target, "w", encoding="utf-8") as file:
-                YAML(typ="safe", pure=True).dump(strip(read_yaml(source)), file)
+            Path(target).write_text(strip(Path(source).read_text(encoding="utf-8")), encoding="utf-8")
             return 0
         case ["check", source, *options]:
-            found = values(read_yaml(source), "--secondary-shielded" in options)
+            found = values(gas_only(source), "--secondary-shielded" in options)
         case ["run", path]:
             found = from_run(path)
         case _:
