@@ -40,7 +40,7 @@ pub struct Case {
     pub grains: GrainOptions,
     /// Turbulent line width, cm s^-1.
     pub turbulence: f64,
-    /// [M]/n_H of falloff reactions, if fixed.
+    /// `[M]/n_H` of falloff reactions, if fixed.
     pub colliders: Option<f64>,
     /// With the columns of every species a case may name; see [`Case::disk_for`].
     pub disk: Disk,

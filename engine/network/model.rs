@@ -73,7 +73,7 @@ pub enum Cause {
         pieces: Vec<Piece>,
         below: Below,
     },
-    /// As `PowerLaw`, times [M] = n(H2) + n(H) + n(He).
+    /// As `PowerLaw`, times `[M]` = n(H2) + n(H) + n(He).
     ThirdBody {
         pieces: Vec<Piece>,
         below: Below,

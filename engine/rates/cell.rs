@@ -23,7 +23,7 @@ pub type Cautions = [u32; 4];
 pub struct Setting {
     /// Turbulent width of lines, cm s^-1.
     pub turbulence: f64,
-    /// [M]/n_H given outright, or None to take it from the abundances.
+    /// `[M]/n_H` given outright, or None to take it from the abundances.
     pub colliders: Option<f64>,
 }
 

@@ -1,6 +1,6 @@
 //! Owns the run file: one HDF5 file per run that explains itself to any reader.
 //!
-//! [`assemble`] writes it whole or not at all, from the records of a journal; [`open`] reads it back.
+//! [`assemble()`] writes it whole or not at all, from the records of a journal; [`open`] reads it back.
 //! It never computes chemistry, and never appends to a file that exists.
 //!
 //! Layout: `abundance[cell, time, species]` with the dimension scales `cell`, `time` (yr), `species`
@@ -25,7 +25,7 @@ pub use assemble::assemble;
 pub use header::{RunHeader, SpeciesInfo, Tolerances};
 pub use read::{RunFile, open};
 
-/// Where the records of [`assemble`] come from: called once per cell, in ascending order; None where
+/// Where the records of [`assemble()`] come from: called once per cell, in ascending order; None where
 /// there is none.
 pub type RecordSource<'a> = dyn FnMut(usize) -> Result<Option<CellRecord>, Failure> + 'a;
 

@@ -161,13 +161,13 @@ impl RunFile {
         self.select("a state", (cell, time, ..))
     }
 
-    /// One cell: [time][species].
+    /// One cell: `[time][species]`.
     pub fn cell(&self, cell: usize) -> Result<Vec<Vec<f64>>, Failure> {
         let flat = self.select("a cell", (cell, .., ..))?;
         Ok(rows(&flat, self.header.species.len()))
     }
 
-    /// One species everywhere: [cell][time].
+    /// One species everywhere: `[cell][time]`.
     pub fn species(&self, species: usize) -> Result<Vec<Vec<f64>>, Failure> {
         let flat = self.select("a species", (.., .., species))?;
         Ok(rows(&flat, self.header.times_yr.len()))
@@ -207,7 +207,7 @@ impl RunFile {
         read().map_err(|cause| Failure::machine("reading the work", &self.path, cause))
     }
 
-    /// Drifts of the invariants: [cell][time]; NaN where a snapshot was not reached.
+    /// Drifts of the invariants: `[cell][time]`; NaN where a snapshot was not reached.
     pub fn balance(&self) -> Result<Vec<Vec<Balance>>, Failure> {
         let read = || -> hdf5::Result<Vec<Vec<Balance>>> {
             let group = self.file.group("checks")?;
@@ -223,7 +223,7 @@ impl RunFile {
         read().map_err(|cause| Failure::machine("reading the checks", &self.path, cause))
     }
 
-    /// How often each caution applied: [cell][caution].
+    /// How often each caution applied: `[cell][caution]`.
     pub fn cautions(&self) -> Result<Vec<Vec<u32>>, Failure> {
         let count = self.header.caution_names.len();
         if count == 0 {
