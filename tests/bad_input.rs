@@ -139,12 +139,12 @@ const IN_THE_CASE: &[Mistake] = &[
     written(
         "output in a folder that is missing",
         &[("three.yaml", "three.h5", "results/three.h5")],
-        &["output: found", "results", "no such folder", "a folder that is there"],
+        &["results/three.h5: output", "no folder `results`", "a folder that exists"],
     ),
     written(
         "output in a folder that is a file",
         &[("three.yaml", "three.h5", "three.csv/three.h5")],
-        &["output: found", "three.csv", "a file", "a folder that is there"],
+        &["three.csv/three.h5: output", "the file `three.csv`", "a folder that exists"],
     ),
 ];
 
@@ -173,7 +173,7 @@ const IN_THE_TABLE: &[Mistake] = &[
     written(
         "without a required column",
         &[("three.csv", "", "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag]\n1.0,0.0,1.0e9,20.0,1.0,1.0\n")],
-        &["three.csv:1: column zeta_cosmic", "none", "s^-1"],
+        &["three.csv:1: column zeta_cosmic", "no such column", "`zeta_cosmic [s^-1]`"],
     ),
     written(
         "ragged row",
@@ -183,7 +183,7 @@ const IN_THE_TABLE: &[Mistake] = &[
     written(
         "column without a unit",
         &[("three.csv", "n_H [cm^-3]", "n_H")],
-        &["three.csv:2: column n_H", "no unit", "n_H [cm^-3]"],
+        &["three.csv:2: column n_H", "no unit", "`n_H [unit]`", "cm^-3"],
     ),
     written(
         "column in a wrong unit",
@@ -201,27 +201,27 @@ const IN_THE_NETWORK: &[Mistake] = &[
     written(
         "unbalanced reaction",
         &[("mini.yaml", "H2+ + H2 -> H3+ + H,", "H2+ + H2 -> H3+,")],
-        &["mini.yaml:24: H2+ + H2 -> H3+", "1 H too few", "the same atoms and charge on both sides"],
+        &["mini.yaml:25: H2+ + H2 -> H3+", "1 H too few", "the same atoms and charge on both sides"],
     ),
     written(
         "unknown key of a reaction",
         &[("mini.yaml", "at_300K: 2.1e-9", "at_300k: 2.1e-9")],
-        &["mini.yaml:24: H2+ + H2 -> H3+ + H", "unknown key `at_300k`", "`at_300K`"],
+        &["mini.yaml:25: H2+ + H2 -> H3+ + H", "unknown key `at_300k`", "`at_300K`"],
     ),
     written(
         "unknown species of a reaction",
         &[("mini.yaml", "H2+ + H2 -> H3+ + H,", "D2+ + H2 -> H3+ + H,")],
-        &["mini.yaml:24: D2+ + H2 -> H3+ + H", "`D2+`", "species"],
+        &["mini.yaml:25: D2+ + H2 -> H3+ + H", "`D2+`", "species"],
     ),
     written(
         "the same reaction twice",
         &[("mini.yaml", "HCO+ + e- -> CO + H, at", "e- + H3+ -> H + H2, at")],
-        &["mini.yaml:27: e- + H3+ -> H + H2", "the same change as line 26", "`adds: true`"],
+        &["mini.yaml:28: e- + H3+ -> H + H2", "the same change as line 27", "`adds: true`"],
     ),
     written(
         "text for a number",
         &[("mini.yaml", "at_300K: 2.1e-9", "at_300K: fast")],
-        &["mini.yaml:24: H2+ + H2 -> H3+ + H", "`fast`", "a number"],
+        &["mini.yaml:25: H2+ + H2 -> H3+ + H", "`fast`", "a number"],
     ),
     written(
         "of a later layout",
@@ -235,7 +235,7 @@ const TYPED: &[Mistake] = &[
     typed("no such case", &["run", "four.yaml"], &["four.yaml: ", "no such file", "a case file"]),
     typed("a folder as case", &["run", "."], &[".: ", "a folder", "a case file"]),
     typed("no threads", &["run", "three.yaml", "--threads", "0"], &["--threads", "`0`", "1 or more"]),
-    typed("threads in words", &["run", "three.yaml", "--threads", "all"], &["error: invalid value 'all' for '--threads"]),
+    typed("threads in words", &["run", "three.yaml", "--threads", "all"], &["--threads", "`all`", "1 or more"]),
     typed(
         "output of another kind",
         &["run", "three.yaml", "--output", "x.hdf"],
@@ -243,10 +243,10 @@ const TYPED: &[Mistake] = &[
     ),
     typed("no such verb", &["launch"], &["error: unrecognized subcommand 'launch'"]),
     typed("no such run", &["look", "four.h5"], &["four.h5: run file", "no such file", "a run file of frostclock"]),
-    typed("a table to look at", &["look", "three.csv"], &["three.csv: run file", "no HDF5 file", "a run file of frostclock"]),
+    typed("a table to look at", &["look", "three.csv"], &["three.csv: run file", "not HDF5", "a run file of frostclock"]),
     typed("a folder to look at", &["look", "."], &[".: run file", "a folder", "a run file of frostclock"]),
-    typed("a place in words", &["at", "done.h5", "--time", "1 yr", "--near", "nonsense"], &["--near", "`nonsense`", "R,Z"]),
-    typed("a place that is none", &["history", "done.h5", "--near", "1,NaN", "--species", "CO"], &["--near", "`1,NaN`", "R,Z"]),
+    typed("a place in words", &["at", "done.h5", "--time", "1 yr", "--near", "nonsense"], &["--near", "`nonsense`", "radius and height in au"]),
+    typed("a place that is none", &["history", "done.h5", "--near", "1,NaN", "--species", "CO"], &["--near", "`1,NaN`", "radius and height in au"]),
     typed("time without unit", &["at", "done.h5", "--time", "1"], &["--time", "`1` without a unit", "a time"]),
     typed(
         "time after the end",
@@ -269,6 +269,11 @@ const TYPED: &[Mistake] = &[
         "CSV in a folder that is missing",
         &["at", "done.h5", "--time", "1 yr", "--csv", "results/x.csv"],
         &["--csv", "results/x.csv", "a file that can be written"],
+    ),
+    typed(
+        "a run in the place of the CSV",
+        &["at", "done.h5", "--time", "1 yr", "--csv", "done.h5"],
+        &["--csv", "`done.h5`", "ending in .csv"],
     ),
     typed("a case to gather", &["gather", "three.yaml"], &["three.yaml: journal", "no journal of frostclock", "a journal"]),
     typed("nothing to gather", &["gather", "three.journal"], &["three.journal: journal", "no such file", "a journal"]),
@@ -325,6 +330,12 @@ const PLACED: &[Mistake] = &[
     ),
     placed("a journal of garbage", |folder| fs::write(folder.join("three.journal"), [7; 999]).unwrap(), RUN, GARBAGE),
     placed(
+        "a folder that cannot be written to",
+        |_| {},
+        &["run", "three.yaml", "--output", "/proc/three.h5"],
+        &["/proc/three.journal: journal", "`/proc`", "a place that can be written to"],
+    ),
+    placed(
         "a journal of garbage, and --fresh",
         |folder| fs::write(folder.join("three.journal"), [7; 999]).unwrap(),
         &["run", "three.yaml", "--fresh"],
@@ -352,7 +363,7 @@ const PLACED: &[Mistake] = &[
             edit(&folder.join("three.csv"), "28.0", "28.1");
         },
         RUN,
-        &["three.journal: conditions of cell 1", "T_dust 28 K", "T_dust 28.1 K", "--fresh"],
+        &["three.journal: conditions of cell 1", "found `T_dust [K] 28.0`", "expected `T_dust [K] 28.1`", "--fresh"],
     ),
     placed("a journal to look at", journal_of_the_case, &["look", "three.journal"], &["three.journal: run file", "the journal of a run", "`gather`"]),
     placed(

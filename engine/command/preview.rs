@@ -24,6 +24,12 @@ pub struct Arguments {
 pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
     let case = case::open(&arguments.case)?;
     let run = Prepared::new(&case)?;
+    // First: whoever cannot have the file should not take the table for success.
+    if let Some(path) = &arguments.csv {
+        let mut file = print::create(path, "--csv")?;
+        write_table(&run.disk, &mut file).map_err(|e| Failure::machine("writing the cells", path, e))?;
+        log::info!("wrote {}", path.display());
+    }
     let phase = |p| run.chemistry.species.iter().filter(|s| s.phase == p).count();
     print::out(&format!(
         "{}\n{} cells, {} snapshots; {} gas species, {} ices, {} reactions",
@@ -42,7 +48,8 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
             print::out(&warning.to_string())?;
         }
     } else if !run.warnings.is_empty() {
-        print::out(&format!("{} remarks on the network (--remarks shows them)", run.warnings.len()))?;
+        let remarks = print::counted(run.warnings.len(), "remark");
+        print::out(&format!("{remarks} on the network (--remarks shows them)"))?;
     }
     let heads = ["cell", "radius [au]", "height [au]", "n_H [cm^-3]", "T_gas [K]", "T_dust [K]", "zeta [s^-1]", "UV after A_V [Draine]"];
     let mut table = Table::new(heads);
@@ -63,10 +70,5 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
         ]);
     }
     table.print()?;
-    if let Some(path) = &arguments.csv {
-        let mut file = print::create(path, "--csv")?;
-        write_table(&run.disk, &mut file).map_err(|e| Failure::machine("writing the cells", path, e))?;
-        log::info!("wrote {}", path.display());
-    }
     Ok(Outcome::Done)
 }
