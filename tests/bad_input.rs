@@ -27,7 +27,13 @@ const fn written(
     edits: &'static [(&'static str, &'static str, &'static str)],
     says: &'static [&'static str],
 ) -> Mistake {
-    Mistake { what, edits, prepare: |_| {}, arguments: RUN, says }
+    Mistake {
+        what,
+        edits,
+        prepare: |_| {},
+        arguments: RUN,
+        says,
+    }
 }
 
 /// A mistake on the command line.
@@ -36,7 +42,13 @@ const fn typed(
     arguments: &'static [&'static str],
     says: &'static [&'static str],
 ) -> Mistake {
-    Mistake { what, edits: &[], prepare: |_| {}, arguments, says }
+    Mistake {
+        what,
+        edits: &[],
+        prepare: |_| {},
+        arguments,
+        says,
+    }
 }
 
 /// A mistake in what lies around.
@@ -46,14 +58,28 @@ const fn placed(
     arguments: &'static [&'static str],
     says: &'static [&'static str],
 ) -> Mistake {
-    Mistake { what, edits: &[], prepare, arguments, says }
+    Mistake {
+        what,
+        edits: &[],
+        prepare,
+        arguments,
+        says,
+    }
 }
 
 const IN_THE_CASE: &[Mistake] = &[
     written(
         "unknown species in the start",
-        &[("three.yaml", "{composition: ices}", "{abundances: {H2: 0.5, C6H6: 1.0e-9}}")],
-        &["three.yaml:8: start: C6H6", "the network does not have", "a species of the network `mini`"],
+        &[(
+            "three.yaml",
+            "{composition: ices}",
+            "{abundances: {H2: 0.5, C6H6: 1.0e-9}}",
+        )],
+        &[
+            "three.yaml:8: start: C6H6",
+            "the network does not have",
+            "a species of the network `mini`",
+        ],
     ),
     written(
         "unknown composition",
@@ -62,23 +88,44 @@ const IN_THE_CASE: &[Mistake] = &[
     ),
     written(
         "charge that does not balance",
-        &[("three.yaml", "{composition: ices}", "{abundances: {H2: 0.5, HCO+: 1.0e-9, e-: 2.0e-9}}")],
-        &["three.yaml:8: start: e-", "charge of -1", "charges that balance"],
+        &[(
+            "three.yaml",
+            "{composition: ices}",
+            "{abundances: {H2: 0.5, HCO+: 1.0e-9, e-: 2.0e-9}}",
+        )],
+        &[
+            "three.yaml:8: start: e-",
+            "charge of -1",
+            "charges that balance",
+        ],
     ),
     written(
         "neither composition nor abundances",
         &[("three.yaml", "{composition: ices}", "{}")],
-        &["three.yaml:8: start", "neither", "`composition` or `abundances`"],
+        &[
+            "three.yaml:8: start",
+            "neither",
+            "`composition` or `abundances`",
+        ],
     ),
     written(
         "negative abundance",
-        &[("three.yaml", "{composition: ices}", "{abundances: {H2: -0.5}}")],
+        &[(
+            "three.yaml",
+            "{composition: ices}",
+            "{abundances: {H2: -0.5}}",
+        )],
         &["three.yaml:8: start.abundances.H2", "`-0.5`", "0 or more"],
     ),
     written(
         "missing unit",
         &[("three.yaml", "until: 1 kyr", "until: 1000")],
-        &["three.yaml:9: clock.until", "`1000` without a unit", "a time", "yr"],
+        &[
+            "three.yaml:9: clock.until",
+            "`1000` without a unit",
+            "a time",
+            "yr",
+        ],
     ),
     written(
         "wrong unit",
@@ -88,12 +135,21 @@ const IN_THE_CASE: &[Mistake] = &[
     written(
         "unknown key",
         &[("three.yaml", "accuracy: {relative", "accuracy: {relativ")],
-        &["three.yaml:10: accuracy.relativ", "unknown key `relativ`", "`relative`"],
+        &[
+            "three.yaml:10: accuracy.relativ",
+            "unknown key `relativ`",
+            "`relative`",
+        ],
     ),
     written(
         "duplicate key",
         &[("three.yaml", "output:", "title: again\noutput:")],
-        &["three.yaml:11: title", "a second `title`", "line 2", "every key once"],
+        &[
+            "three.yaml:11: title",
+            "a second `title`",
+            "line 2",
+            "every key once",
+        ],
     ),
     written(
         "missing key",
@@ -105,31 +161,58 @@ const IN_THE_CASE: &[Mistake] = &[
         &[("three.yaml", "{composition: ices}", "{composition: ices")],
         &["three.yaml:", "expected valid YAML"],
     ),
-    written("empty case", &[("three.yaml", "", "")], &["three.yaml: whole file", "no entries", "keys with values"]),
+    written(
+        "empty case",
+        &[("three.yaml", "", "")],
+        &["three.yaml: whole file", "no entries", "keys with values"],
+    ),
     written(
         "first snapshot after the end",
         &[("three.yaml", "first: 1 yr", "first: 1 Myr")],
-        &["three.yaml:9: clock.first", "`1 Myr`", "a time before `1 kyr`"],
+        &[
+            "three.yaml:9: clock.first",
+            "`1 Myr`",
+            "a time before `1 kyr`",
+        ],
     ),
     written(
         "unknown spectrum",
         &[("three.yaml", "spectrum: draine", "spectrum: candle")],
-        &["three.yaml:7: ", "`sky`", "`candle`", "draine, black_body_4000K"],
+        &[
+            "three.yaml:7: ",
+            "`sky`",
+            "`candle`",
+            "draine, black_body_4000K",
+        ],
     ),
     written(
         "no network of that name",
         &[("three.yaml", "mini.yaml", "maxi")],
-        &["three.yaml:3: network", "`maxi`", "standard, or a path ending in .yaml"],
+        &[
+            "three.yaml:3: network",
+            "`maxi`",
+            "standard, or a path ending in .yaml",
+        ],
     ),
     written(
         "network file missing",
         &[("three.yaml", "mini.yaml", "maxi.yaml")],
-        &["three.yaml:3: network", "no such file", "maxi.yaml", "a readable file"],
+        &[
+            "three.yaml:3: network",
+            "no such file",
+            "maxi.yaml",
+            "a readable file",
+        ],
     ),
     written(
         "table missing",
         &[("three.yaml", "table: three.csv", "table: four.csv")],
-        &["three.yaml:5: disk.table", "no such file", "four.csv", "a readable file"],
+        &[
+            "three.yaml:5: disk.table",
+            "no such file",
+            "four.csv",
+            "a readable file",
+        ],
     ),
     written(
         "output of another kind",
@@ -139,12 +222,20 @@ const IN_THE_CASE: &[Mistake] = &[
     written(
         "output in a folder that is missing",
         &[("three.yaml", "three.h5", "results/three.h5")],
-        &["results/three.h5: output", "no folder `results`", "a folder that exists"],
+        &[
+            "results/three.h5: output",
+            "no folder `results`",
+            "a folder that exists",
+        ],
     ),
     written(
         "output in a folder that is a file",
         &[("three.yaml", "three.h5", "three.csv/three.h5")],
-        &["three.csv/three.h5: output", "the file `three.csv`", "a folder that exists"],
+        &[
+            "three.csv/three.h5: output",
+            "the file `three.csv`",
+            "a folder that exists",
+        ],
     ),
 ];
 
@@ -164,16 +255,32 @@ const IN_THE_TABLE: &[Mistake] = &[
         &[("three.csv", "T_dust [K]", "T_gas [K]")],
         &["three.csv:2: column T_gas", "it twice", "every column once"],
     ),
-    written("empty", &[("three.csv", "", "")], &["three.csv: table", "nothing", "a header line"]),
+    written(
+        "empty",
+        &[("three.csv", "", "")],
+        &["three.csv: table", "nothing", "a header line"],
+    ),
     written(
         "without cells",
-        &[("three.csv", "", "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag],zeta_cosmic [s^-1]\n")],
+        &[(
+            "three.csv",
+            "",
+            "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag],zeta_cosmic [s^-1]\n",
+        )],
         &["three.csv:1: table", "only a header", "at least one line"],
     ),
     written(
         "without a required column",
-        &[("three.csv", "", "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag]\n1.0,0.0,1.0e9,20.0,1.0,1.0\n")],
-        &["three.csv:1: column zeta_cosmic", "no such column", "`zeta_cosmic [s^-1]`"],
+        &[(
+            "three.csv",
+            "",
+            "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag]\n1.0,0.0,1.0e9,20.0,1.0,1.0\n",
+        )],
+        &[
+            "three.csv:1: column zeta_cosmic",
+            "no such column",
+            "`zeta_cosmic [s^-1]`",
+        ],
     ),
     written(
         "ragged row",
@@ -183,7 +290,12 @@ const IN_THE_TABLE: &[Mistake] = &[
     written(
         "column without a unit",
         &[("three.csv", "n_H [cm^-3]", "n_H")],
-        &["three.csv:2: column n_H", "no unit", "`n_H [unit]`", "cm^-3"],
+        &[
+            "three.csv:2: column n_H",
+            "no unit",
+            "`n_H [unit]`",
+            "cm^-3",
+        ],
     ),
     written(
         "column in a wrong unit",
@@ -201,12 +313,20 @@ const IN_THE_NETWORK: &[Mistake] = &[
     written(
         "unbalanced reaction",
         &[("mini.yaml", "H2+ + H2 -> H3+ + H,", "H2+ + H2 -> H3+,")],
-        &["mini.yaml:25: H2+ + H2 -> H3+", "1 H too few", "the same atoms and charge on both sides"],
+        &[
+            "mini.yaml:25: H2+ + H2 -> H3+",
+            "1 H too few",
+            "the same atoms and charge on both sides",
+        ],
     ),
     written(
         "unknown key of a reaction",
         &[("mini.yaml", "at_300K: 2.1e-9", "at_300k: 2.1e-9")],
-        &["mini.yaml:25: H2+ + H2 -> H3+ + H", "unknown key `at_300k`", "`at_300K`"],
+        &[
+            "mini.yaml:25: H2+ + H2 -> H3+ + H",
+            "unknown key `at_300k`",
+            "`at_300K`",
+        ],
     ),
     written(
         "unknown species of a reaction",
@@ -215,8 +335,16 @@ const IN_THE_NETWORK: &[Mistake] = &[
     ),
     written(
         "the same reaction twice",
-        &[("mini.yaml", "HCO+ + e- -> CO + H, at", "e- + H3+ -> H + H2, at")],
-        &["mini.yaml:28: e- + H3+ -> H + H2", "the same change as line 27", "`adds: true`"],
+        &[(
+            "mini.yaml",
+            "HCO+ + e- -> CO + H, at",
+            "e- + H3+ -> H + H2, at",
+        )],
+        &[
+            "mini.yaml:28: e- + H3+ -> H + H2",
+            "the same change as line 27",
+            "`adds: true`",
+        ],
     ),
     written(
         "text for a number",
@@ -226,34 +354,102 @@ const IN_THE_NETWORK: &[Mistake] = &[
     written(
         "of a later layout",
         &[("mini.yaml", "layout: 1", "layout: 7")],
-        &["mini.yaml:3: layout", "`7`", "1, the layout this version reads"],
+        &[
+            "mini.yaml:3: layout",
+            "`7`",
+            "1, the layout this version reads",
+        ],
     ),
-    written("not a network", &[("mini.yaml", "", "- 1\n- 2\n")], &["mini.yaml:1: whole file", "a list", "keys with values"]),
+    written(
+        "not a network",
+        &[("mini.yaml", "", "- 1\n- 2\n")],
+        &["mini.yaml:1: whole file", "a list", "keys with values"],
+    ),
 ];
 
 const TYPED: &[Mistake] = &[
-    typed("no such case", &["run", "four.yaml"], &["four.yaml: ", "no such file", "a case file"]),
-    typed("a folder as case", &["run", "."], &[".: ", "a folder", "a case file"]),
-    typed("no threads", &["run", "three.yaml", "--threads", "0"], &["--threads", "`0`", "1 or more"]),
-    typed("threads in words", &["run", "three.yaml", "--threads", "all"], &["--threads", "`all`", "1 or more"]),
+    typed(
+        "no such case",
+        &["run", "four.yaml"],
+        &["four.yaml: ", "no such file", "a case file"],
+    ),
+    typed(
+        "a folder as case",
+        &["run", "."],
+        &[".: ", "a folder", "a case file"],
+    ),
+    typed(
+        "no threads",
+        &["run", "three.yaml", "--threads", "0"],
+        &["--threads", "`0`", "1 or more"],
+    ),
+    typed(
+        "threads in words",
+        &["run", "three.yaml", "--threads", "all"],
+        &["--threads", "`all`", "1 or more"],
+    ),
     typed(
         "output of another kind",
         &["run", "three.yaml", "--output", "x.hdf"],
         &["--output", "`x.hdf`", "ending in .h5"],
     ),
-    typed("no such verb", &["launch"], &["error: unrecognized subcommand 'launch'"]),
-    typed("no such run", &["look", "four.h5"], &["four.h5: run file", "no such file", "a run file of frostclock"]),
-    typed("a table to look at", &["look", "three.csv"], &["three.csv: run file", "not HDF5", "a run file of frostclock"]),
-    typed("a folder to look at", &["look", "."], &[".: run file", "a folder", "a run file of frostclock"]),
-    typed("a place in words", &["at", "done.h5", "--time", "1 yr", "--near", "nonsense"], &["--near", "`nonsense`", "radius and height in au"]),
-    typed("a place that is none", &["history", "done.h5", "--near", "1,NaN", "--species", "CO"], &["--near", "`1,NaN`", "radius and height in au"]),
-    typed("time without unit", &["at", "done.h5", "--time", "1"], &["--time", "`1` without a unit", "a time"]),
+    typed(
+        "no such verb",
+        &["launch"],
+        &["error: unrecognized subcommand 'launch'"],
+    ),
+    typed(
+        "no such run",
+        &["look", "four.h5"],
+        &[
+            "four.h5: run file",
+            "no such file",
+            "a run file of frostclock",
+        ],
+    ),
+    typed(
+        "a table to look at",
+        &["look", "three.csv"],
+        &[
+            "three.csv: run file",
+            "not HDF5",
+            "a run file of frostclock",
+        ],
+    ),
+    typed(
+        "a folder to look at",
+        &["look", "."],
+        &[".: run file", "a folder", "a run file of frostclock"],
+    ),
+    typed(
+        "a place in words",
+        &["at", "done.h5", "--time", "1 yr", "--near", "nonsense"],
+        &["--near", "`nonsense`", "radius and height in au"],
+    ),
+    typed(
+        "a place that is none",
+        &["history", "done.h5", "--near", "1,NaN", "--species", "CO"],
+        &["--near", "`1,NaN`", "radius and height in au"],
+    ),
+    typed(
+        "time without unit",
+        &["at", "done.h5", "--time", "1"],
+        &["--time", "`1` without a unit", "a time"],
+    ),
     typed(
         "time after the end",
         &["at", "done.h5", "--time", "1 Myr"],
-        &["--time", "`1 Myr`", "a time within the run, 0 yr to 1000 yr"],
+        &[
+            "--time",
+            "`1 Myr`",
+            "a time within the run, 0 yr to 1000 yr",
+        ],
     ),
-    typed("negative time", &["at", "done.h5", "--time", "-1 yr"], &["--time", "`-1 yr`", "a time within the run"]),
+    typed(
+        "negative time",
+        &["at", "done.h5", "--time", "-1 yr"],
+        &["--time", "`-1 yr`", "a time within the run"],
+    ),
     typed(
         "species the run does not have",
         &["at", "done.h5", "--time", "1 yr", "--species", "CO,co2"],
@@ -264,7 +460,11 @@ const TYPED: &[Mistake] = &[
         &["history", "done.h5", "--near", "100,0", "--species", "co"],
         &["--species", "`co`", "such as CO, CO(ads)"],
     ),
-    typed("no species at all", &["at", "done.h5", "--time", "1 yr", "--species", ","], &["--species", "an empty list"]),
+    typed(
+        "no species at all",
+        &["at", "done.h5", "--time", "1 yr", "--species", ","],
+        &["--species", "an empty list"],
+    ),
     typed(
         "CSV in a folder that is missing",
         &["at", "done.h5", "--time", "1 yr", "--csv", "results/x.csv"],
@@ -275,8 +475,20 @@ const TYPED: &[Mistake] = &[
         &["at", "done.h5", "--time", "1 yr", "--csv", "done.h5"],
         &["--csv", "`done.h5`", "ending in .csv"],
     ),
-    typed("a case to gather", &["gather", "three.yaml"], &["three.yaml: journal", "no journal of frostclock", "a journal"]),
-    typed("nothing to gather", &["gather", "three.journal"], &["three.journal: journal", "no such file", "a journal"]),
+    typed(
+        "a case to gather",
+        &["gather", "three.yaml"],
+        &[
+            "three.yaml: journal",
+            "no journal of frostclock",
+            "a journal",
+        ],
+    ),
+    typed(
+        "nothing to gather",
+        &["gather", "three.journal"],
+        &["three.journal: journal", "no such file", "a journal"],
+    ),
 ];
 
 const PLACED: &[Mistake] = &[
@@ -296,28 +508,47 @@ const PLACED: &[Mistake] = &[
         "a file of another program in the place of the output",
         |folder| fs::write(folder.join("three.h5"), b"SIMPLE  =                    T").unwrap(),
         RUN,
-        &["three.h5: output", "no run of frostclock", "a run to replace, or no file"],
+        &[
+            "three.h5: output",
+            "no run of frostclock",
+            "a run to replace, or no file",
+        ],
     ),
     placed(
         "the same, and --fresh",
         |folder| fs::write(folder.join("three.h5"), b"SIMPLE  =                    T").unwrap(),
         &["run", "three.yaml", "--fresh"],
-        &["three.h5: output", "no run of frostclock", "a run to replace, or no file"],
+        &[
+            "three.h5: output",
+            "no run of frostclock",
+            "a run to replace, or no file",
+        ],
     ),
     placed(
         "an HDF5 file of another program in the place of the output",
         |folder| {
             let file = hdf5::File::create(folder.join("three.h5")).unwrap();
-            file.new_dataset::<f64>().shape(3).create("abundance").unwrap();
+            file.new_dataset::<f64>()
+                .shape(3)
+                .create("abundance")
+                .unwrap();
         },
         &["run", "three.yaml", "--fresh"],
-        &["three.h5: output", "no run of frostclock", "a run to replace, or no file"],
+        &[
+            "three.h5: output",
+            "no run of frostclock",
+            "a run to replace, or no file",
+        ],
     ),
     placed(
         "a folder in the place of the output",
         |folder| fs::create_dir(folder.join("three.h5")).unwrap(),
         RUN,
-        &["three.h5: output", "a folder", "a run to replace, or no file"],
+        &[
+            "three.h5: output",
+            "a folder",
+            "a run to replace, or no file",
+        ],
     ),
     placed(
         "the run of another case in the place of the output",
@@ -326,14 +557,27 @@ const PLACED: &[Mistake] = &[
             edit(&folder.join("three.yaml"), "1 kyr", "2 kyr");
         },
         RUN,
-        &["three.h5: output", "a run of other inputs (`Three places in a thimble`)", "--fresh to replace it"],
+        &[
+            "three.h5: output",
+            "a run of other inputs (`Three places in a thimble`)",
+            "--fresh to replace it",
+        ],
     ),
-    placed("a journal of garbage", |folder| fs::write(folder.join("three.journal"), [7; 999]).unwrap(), RUN, GARBAGE),
+    placed(
+        "a journal of garbage",
+        |folder| fs::write(folder.join("three.journal"), [7; 999]).unwrap(),
+        RUN,
+        GARBAGE,
+    ),
     placed(
         "a folder that cannot be written to",
         |_| {},
         &["run", "three.yaml", "--output", "/proc/three.h5"],
-        &["/proc/three.journal: journal", "`/proc`", "a place that can be written to"],
+        &[
+            "/proc/three.journal: journal",
+            "`/proc`",
+            "a place that can be written to",
+        ],
     ),
     placed(
         "a journal of garbage, and --fresh",
@@ -345,7 +589,11 @@ const PLACED: &[Mistake] = &[
         "a folder in the place of the journal",
         |folder| fs::create_dir(folder.join("three.journal")).unwrap(),
         RUN,
-        &["three.journal: journal", "a folder", "a journal, or no file"],
+        &[
+            "three.journal: journal",
+            "a folder",
+            "a journal, or no file",
+        ],
     ),
     placed(
         "the journal of another case",
@@ -354,7 +602,12 @@ const PLACED: &[Mistake] = &[
             edit(&folder.join("three.yaml"), "1 kyr", "2 kyr");
         },
         RUN,
-        &["three.journal: resolved case, line", "1 kyr", "2 kyr", "--fresh"],
+        &[
+            "three.journal: resolved case, line",
+            "1 kyr",
+            "2 kyr",
+            "--fresh",
+        ],
     ),
     placed(
         "the journal of another table",
@@ -363,9 +616,23 @@ const PLACED: &[Mistake] = &[
             edit(&folder.join("three.csv"), "28.0", "28.1");
         },
         RUN,
-        &["three.journal: conditions of cell 1", "found `T_dust [K] 28.0`", "expected `T_dust [K] 28.1`", "--fresh"],
+        &[
+            "three.journal: conditions of cell 1",
+            "found `T_dust [K] 28.0`",
+            "expected `T_dust [K] 28.1`",
+            "--fresh",
+        ],
     ),
-    placed("a journal to look at", journal_of_the_case, &["look", "three.journal"], &["three.journal: run file", "the journal of a run", "`gather`"]),
+    placed(
+        "a journal to look at",
+        journal_of_the_case,
+        &["look", "three.journal"],
+        &[
+            "three.journal: run file",
+            "the journal of a run",
+            "`gather`",
+        ],
+    ),
     placed(
         "a torn run file",
         |folder| {
@@ -389,7 +656,11 @@ const PLACED: &[Mistake] = &[
     ),
 ];
 
-const GARBAGE: &[&str] = &["three.journal: journal", "no journal of frostclock", "a journal, or no file"];
+const GARBAGE: &[&str] = &[
+    "three.journal: journal",
+    "no journal of frostclock",
+    "a journal, or no file",
+];
 
 /// A journal as a run of the case leaves it before its first cell.
 fn journal_of_the_case(folder: &Path) {
@@ -421,11 +692,22 @@ fn every_mistake_is_named_once_and_harms_nothing() {
         }
         println!("{}:\n{}", mistake.what, ended.err);
         if !faults.is_empty() {
-            wrong.push(format!("{}: {}\n{}", mistake.what, faults.join("; "), ended.err));
+            wrong.push(format!(
+                "{}: {}\n{}",
+                mistake.what,
+                faults.join("; "),
+                ended.err
+            ));
         }
     }
     assert!(all.len() >= 30);
-    assert!(wrong.is_empty(), "{} of {} mistakes:\n\n{}", wrong.len(), all.len(), wrong.join("\n"));
+    assert!(
+        wrong.is_empty(),
+        "{} of {} mistakes:\n\n{}",
+        wrong.len(),
+        all.len(),
+        wrong.join("\n")
+    );
 }
 
 /// What is wrong with what was said.
@@ -438,12 +720,19 @@ fn faults(mistake: &Mistake, ended: &Ended) -> Vec<String> {
         faults.push(format!("on stdout: {}", ended.out));
     }
     // Words of Rust, not of the trade.
-    for word in ["panicked", "Some(", "None", "struct", "enum", "f64", "usize", "Error {", "os error", "\\\""] {
+    for word in [
+        "panicked", "Some(", "None", "struct", "enum", "f64", "usize", "Error {", "os error",
+        "\\\"",
+    ] {
         if ended.err.contains(word) {
             faults.push(format!("`{word}`"));
         }
     }
-    let messages: Vec<&str> = ended.err.lines().filter(|line| line.contains(": found ") || line.contains("error: ")).collect();
+    let messages: Vec<&str> = ended
+        .err
+        .lines()
+        .filter(|line| line.contains(": found ") || line.contains("error: "))
+        .collect();
     let [message] = messages.as_slice() else {
         faults.push(format!("{} messages", messages.len()));
         return faults;
@@ -456,7 +745,11 @@ fn faults(mistake: &Mistake, ended: &Ended) -> Vec<String> {
     if !message.starts_with(start) {
         faults.push(format!("does not start with `{start}`"));
     }
-    faults.extend(rest.iter().filter(|words| !message.contains(**words)).map(|words| format!("no `{words}`")));
+    faults.extend(
+        rest.iter()
+            .filter(|words| !message.contains(**words))
+            .map(|words| format!("no `{words}`")),
+    );
     faults
 }
 
@@ -465,10 +758,17 @@ fn faults(mistake: &Mistake, ended: &Ended) -> Vec<String> {
 fn two_mistakes_give_two_messages() {
     let folder = three_places();
     edit(&folder.path().join("three.yaml"), "1 kyr", "1000");
-    edit(&folder.path().join("three.yaml"), "relative: 1.0e-5", "relative: -1.0e-5");
+    edit(
+        &folder.path().join("three.yaml"),
+        "relative: 1.0e-5",
+        "relative: -1.0e-5",
+    );
     let ended = frostclock(folder.path(), RUN);
     assert_eq!(ended.status, 2);
-    for line in ["three.yaml:9: clock.until: found", "three.yaml:10: accuracy.relative: found"] {
+    for line in [
+        "three.yaml:9: clock.until: found",
+        "three.yaml:10: accuracy.relative: found",
+    ] {
         assert_eq!(ended.err.matches(line).count(), 1, "{}", ended.err);
     }
 }

@@ -12,7 +12,10 @@ use std::path::Path;
 use std::process::{Child, Stdio};
 use std::thread::sleep;
 use std::time::{Duration, Instant};
-use support::{assert_same_run, command, datasets, folder_with, frostclock, names, send, shell_status, succeeds, three_places};
+use support::{
+    assert_same_run, command, datasets, folder_with, frostclock, names, send, shell_status,
+    succeeds, three_places,
+};
 use tempfile::TempDir;
 
 const CELLS: usize = 24;
@@ -22,13 +25,20 @@ const KILLS: usize = 12;
 const MOST_PER_RUN: usize = 30;
 
 fn seed() -> u64 {
-    let seed = std::env::var("FROSTCLOCK_SEED").ok().and_then(|text| text.parse().ok()).unwrap_or(20);
+    let seed = std::env::var("FROSTCLOCK_SEED")
+        .ok()
+        .and_then(|text| text.parse().ok())
+        .unwrap_or(20);
     println!("FROSTCLOCK_SEED={seed}");
     seed
 }
 
 fn grid() -> TempDir {
-    folder_with(&["tests/data/grid.yaml", "tests/data/grid.csv", "tests/reference/small.yaml"])
+    folder_with(&[
+        "tests/data/grid.yaml",
+        "tests/data/grid.csv",
+        "tests/reference/small.yaml",
+    ])
 }
 
 /// An uninterrupted run; and how long it took.
@@ -41,7 +51,9 @@ fn uninterrupted() -> (TempDir, Duration) {
 
 /// How many cells the journal of the grid holds; None without a journal or a whole header.
 fn in_journal(folder: &Path) -> Option<usize> {
-    journal::read_only(&folder.join("grid.journal")).ok().map(|records| records.finished().count())
+    journal::read_only(&folder.join("grid.journal"))
+        .ok()
+        .map(|records| records.finished().count())
 }
 
 /// Stops `child` with `signal` after `delay`; its exit status as a shell reports it.
@@ -65,13 +77,24 @@ fn killed_at_any_moment_a_run_comes_to_the_same_bits() {
             let folder = grid();
             let arguments = ["run", "grid.yaml", "--threads", threads];
             for attempt in 0.. {
-                let child = command(folder.path(), &arguments).stderr(Stdio::null()).spawn().expect("starts");
+                let child = command(folder.path(), &arguments)
+                    .stderr(Stdio::null())
+                    .spawn()
+                    .expect("starts");
                 if attempt == MOST_PER_RUN {
                     let ended = child.wait_with_output().expect("ends");
                     assert!(ended.status.success(), "{ended:?}");
                     break;
                 }
-                let (signal, number) = *random.choice(&[("KILL", 9), ("KILL", 9), ("KILL", 9), ("INT", 2), ("TERM", 15)]).expect("one");
+                let (signal, number) = *random
+                    .choice(&[
+                        ("KILL", 9),
+                        ("KILL", 9),
+                        ("KILL", 9),
+                        ("INT", 2),
+                        ("TERM", 15),
+                    ])
+                    .expect("one");
                 let delay = took.mul_f64(random.f64() * 0.35);
                 let status = stop(child, signal, delay);
                 if status == 0 {
@@ -80,13 +103,21 @@ fn killed_at_any_moment_a_run_comes_to_the_same_bits() {
                 assert_eq!(status, 128 + number, "after {signal}");
                 kills += 1;
                 let finished = in_journal(folder.path());
-                println!("{signal} after {delay:?}, {threads} thread(s): {finished:?} cells in the journal");
+                println!(
+                    "{signal} after {delay:?}, {threads} thread(s): {finished:?} cells in the journal"
+                );
                 halfway.extend(finished.filter(|cells| (1..CELLS).contains(cells)));
             }
             assert_same_run(&whole, &folder.path().join("grid.h5"));
-            assert_eq!(names(folder.path()), ["grid.csv", "grid.h5", "grid.yaml", "small.yaml"]);
+            assert_eq!(
+                names(folder.path()),
+                ["grid.csv", "grid.h5", "grid.yaml", "small.yaml"]
+            );
         }
-        assert!(halfway.len() >= 4, "hardly any kill came half-way: {halfway:?} of {kills}");
+        assert!(
+            halfway.len() >= 4,
+            "hardly any kill came half-way: {halfway:?} of {kills}"
+        );
     }
 }
 
@@ -97,23 +128,41 @@ fn a_signal_ends_a_run_with_its_status_and_keeps_the_cells() {
     for (signal, status) in [("INT", 130), ("TERM", 143)] {
         let folder = grid();
         let mut child = start(folder.path(), &["run", "grid.yaml", "--threads", "1"]);
-        let mut lines = BufReader::new(child.stderr.take().expect("piped")).lines().map_while(Result::ok);
-        assert!(lines.any(|line| line.contains("of 24 cells")), "no progress");
+        let mut lines = BufReader::new(child.stderr.take().expect("piped"))
+            .lines()
+            .map_while(Result::ok);
+        assert!(
+            lines.any(|line| line.contains("of 24 cells")),
+            "no progress"
+        );
         send(signal, &child);
         let said: Vec<String> = lines.collect();
         assert_eq!(shell_status(child.wait().expect("ends")), status);
-        assert!(said.iter().any(|line| line == "stopped; the same command goes on from the finished cells"), "{said:?}");
+        assert!(
+            said.iter()
+                .any(|line| line == "stopped; the same command goes on from the finished cells"),
+            "{said:?}"
+        );
         assert!(!folder.path().join("grid.h5").exists());
         let kept = in_journal(folder.path()).expect("a journal");
         assert!((1..CELLS).contains(&kept), "{kept} cells");
         let again = succeeds(folder.path(), &["run", "grid.yaml"]);
-        assert!(again.err.contains(&format!("going on from {kept} finished cell")), "{}", again.err);
+        assert!(
+            again
+                .err
+                .contains(&format!("going on from {kept} finished cell")),
+            "{}",
+            again.err
+        );
     }
 }
 
 /// A run whose stderr is piped.
 fn start(folder: &Path, arguments: &[&str]) -> Child {
-    command(folder, arguments).stderr(Stdio::piped()).spawn().expect("starts")
+    command(folder, arguments)
+        .stderr(Stdio::piped())
+        .spawn()
+        .expect("starts")
 }
 
 /// If it failed, a look at a long run under way would show wrong numbers, or disturb it.
@@ -121,8 +170,13 @@ fn start(folder: &Path, arguments: &[&str]) -> Child {
 fn gathering_a_run_under_way_shows_its_finished_cells_and_does_not_disturb_it() {
     let folder = grid();
     let mut child = start(folder.path(), &["run", "grid.yaml", "--threads", "2"]);
-    let mut lines = BufReader::new(child.stderr.take().expect("piped")).lines().map_while(Result::ok);
-    assert!(lines.any(|line| line.contains("of 24 cells")), "no progress");
+    let mut lines = BufReader::new(child.stderr.take().expect("piped"))
+        .lines()
+        .map_while(Result::ok);
+    assert!(
+        lines.any(|line| line.contains("of 24 cells")),
+        "no progress"
+    );
     // Held where it is, whatever that is, so that it cannot end before it was looked at.
     send("STOP", &child);
     let gathered = frostclock(folder.path(), &["gather", "grid.journal"]);
@@ -131,7 +185,8 @@ fn gathering_a_run_under_way_shows_its_finished_cells_and_does_not_disturb_it() 
     assert_eq!(shell_status(child.wait().expect("ends")), 0, "{rest:?}");
     assert_eq!(gathered.status, 0, "{}", gathered.err);
 
-    let partial = frostclock::store::open(&folder.path().join("grid.partial.h5")).expect("a run file");
+    let partial =
+        frostclock::store::open(&folder.path().join("grid.partial.h5")).expect("a run file");
     let last = frostclock::store::open(&folder.path().join("grid.h5")).expect("a run file");
     assert_eq!(partial.header().encode(), last.header().encode());
     let mut finished = 0;
@@ -141,16 +196,28 @@ fn gathering_a_run_under_way_shows_its_finished_cells_and_does_not_disturb_it() 
             0 => {
                 finished += 1;
                 let pairs = numbers(&partial).into_iter().zip(numbers(&last));
-                assert!(pairs.into_iter().all(|(p, l)| p.to_bits() == l.to_bits()), "cell {cell}");
+                assert!(
+                    pairs.into_iter().all(|(p, l)| p.to_bits() == l.to_bits()),
+                    "cell {cell}"
+                );
             }
             2 => assert!(numbers(&partial).iter().all(|x| x.is_nan()), "cell {cell}"),
             other => panic!("status {other} of cell {cell}"),
         }
     }
     assert!((1..CELLS).contains(&finished), "{finished} cells finished");
-    assert!(gathered.err.contains(&format!("{finished} of 24 cells in grid.partial.h5")), "{}", gathered.err);
+    assert!(
+        gathered
+            .err
+            .contains(&format!("{finished} of 24 cells in grid.partial.h5")),
+        "{}",
+        gathered.err
+    );
     let look = succeeds(folder.path(), &["look", "grid.partial.h5"]).out;
-    let said = format!("24 ({finished} done, 0 failed, {} not run)", CELLS - finished);
+    let said = format!(
+        "24 ({finished} done, 0 failed, {} not run)",
+        CELLS - finished
+    );
     assert!(look.contains(&said), "{look}");
 }
 
@@ -163,9 +230,14 @@ fn killed_while_the_file_is_written_a_run_still_comes_to_it() {
     let mut leftovers = 0;
     for round in 0..12 {
         let folder = three_places();
-        let mut child = command(folder.path(), &["run", "three.yaml"]).stderr(Stdio::null()).spawn().expect("starts");
+        let mut child = command(folder.path(), &["run", "three.yaml"])
+            .stderr(Stdio::null())
+            .spawn()
+            .expect("starts");
         let is_part = |name: &String| name.contains(".part-");
-        while child.try_wait().expect("a child").is_none() && !names_now(folder.path()).iter().any(is_part) {}
+        while child.try_wait().expect("a child").is_none()
+            && !names_now(folder.path()).iter().any(is_part)
+        {}
         sleep(Duration::from_micros(random.u64(0..9000)));
         child.kill().expect("killed, or ended before");
         child.wait().expect("ends");
@@ -173,8 +245,14 @@ fn killed_while_the_file_is_written_a_run_still_comes_to_it() {
         println!("round {round}: {left:?}");
         leftovers += usize::from(left.iter().any(is_part));
         succeeds(folder.path(), &["run", "three.yaml"]);
-        assert_eq!(names(folder.path()), ["mini.yaml", "three.csv", "three.h5", "three.yaml"]);
-        assert_same_run(&folder.path().join("three.h5"), &whole.path().join("three.h5"));
+        assert_eq!(
+            names(folder.path()),
+            ["mini.yaml", "three.csv", "three.h5", "three.yaml"]
+        );
+        assert_same_run(
+            &folder.path().join("three.h5"),
+            &whole.path().join("three.h5"),
+        );
     }
     assert!(leftovers > 0, "no kill came while the file was written");
 }
@@ -182,7 +260,10 @@ fn killed_while_the_file_is_written_a_run_still_comes_to_it() {
 /// The names in a folder in which files come and go.
 fn names_now(folder: &Path) -> Vec<String> {
     let entries = fs::read_dir(folder).expect("a folder");
-    entries.flatten().map(|entry| entry.file_name().to_string_lossy().into_owned()).collect()
+    entries
+        .flatten()
+        .map(|entry| entry.file_name().to_string_lossy().into_owned())
+        .collect()
 }
 
 /// If it failed, part files of killed runs would pile up, or one that is being written, or a user's
@@ -190,8 +271,16 @@ fn names_now(folder: &Path) -> Vec<String> {
 #[test]
 fn only_part_files_that_nobody_writes_are_cleared_away() {
     let folder = three_places();
-    let others = ["three.h5.part-2-of-it", "three.h5.part-old", "other.h5.part-1-0", "three.h5.part-8-0"];
-    for name in others.into_iter().chain(["three.h5.part-1-0", "three.h5.part-99999-3"]) {
+    let others = [
+        "three.h5.part-2-of-it",
+        "three.h5.part-old",
+        "other.h5.part-1-0",
+        "three.h5.part-8-0",
+    ];
+    for name in others
+        .into_iter()
+        .chain(["three.h5.part-1-0", "three.h5.part-99999-3"])
+    {
         fs::write(folder.path().join(name), b"half of a file").expect("written");
     }
     // As HDF5 holds a file that it writes.
@@ -202,6 +291,11 @@ fn only_part_files_that_nobody_writes_are_cleared_away() {
     expected.extend(others);
     expected.sort_unstable();
     assert_eq!(names(folder.path()), expected, "{}", ended.err);
-    assert_eq!(ended.err.matches("left by a run that was killed").count(), 2, "{}", ended.err);
+    assert_eq!(
+        ended.err.matches("left by a run that was killed").count(),
+        2,
+        "{}",
+        ended.err
+    );
     assert!(datasets(&folder.path().join("three.h5")).contains_key("/abundance"));
 }

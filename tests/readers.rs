@@ -13,10 +13,22 @@ fn a_run() -> TempDir {
     let folder = three_places();
     let field = "- {name: sky, spectrum: draine}";
     let star = "- {name: star, spectrum: black_body_4000K, attenuated: true}";
-    edit(&folder.path().join("three.yaml"), field, &format!("{field}\n    {star}"));
+    edit(
+        &folder.path().join("three.yaml"),
+        field,
+        &format!("{field}\n    {star}"),
+    );
     let table = folder.path().join("three.csv");
-    edit(&table, "zeta_cosmic [s^-1]", "zeta_cosmic [s^-1],UV_star [Draine],AV_star [mag],shield_H2_star [1]");
-    edit(&table, "15.0,15.0,0.5,30.0,1.3e-17", "1.0e-3,15.0,0.5,30.0,1.3e-17,1.0e-9,60.0,");
+    edit(
+        &table,
+        "zeta_cosmic [s^-1]",
+        "zeta_cosmic [s^-1],UV_star [Draine],AV_star [mag],shield_H2_star [1]",
+    );
+    edit(
+        &table,
+        "15.0,15.0,0.5,30.0,1.3e-17",
+        "1.0e-3,15.0,0.5,30.0,1.3e-17,1.0e-9,60.0,",
+    );
     edit(&table, "3.0,1.3e-17", "3.0,1.3e-17,10.0,6.0,1.0e-3");
     edit(&table, "0.2,1.3e-17", "0.2,1.3e-17,300.0,0.5,0.5");
     let ended = frostclock(folder.path(), &["run", "three.yaml"]);
@@ -27,12 +39,17 @@ fn a_run() -> TempDir {
 /// What another program says of the run file; it must be content.
 fn read_by(program: &Path, arguments: &[&str], folder: &Path) -> String {
     let name = program.display();
-    let read = Command::new(program).args(arguments).current_dir(folder).output();
-    let read = read.unwrap_or_else(|cause| {
-        panic!("{name}: {cause} (it comes with `sh tools/test`)")
-    });
+    let read = Command::new(program)
+        .args(arguments)
+        .current_dir(folder)
+        .output();
+    let read =
+        read.unwrap_or_else(|cause| panic!("{name}: {cause} (it comes with `sh tools/test`)"));
     let said = String::from_utf8_lossy(&read.stderr);
-    assert!(read.status.success() && said.is_empty(), "{name} {arguments:?}: {said}");
+    assert!(
+        read.status.success() && said.is_empty(),
+        "{name} {arguments:?}: {said}"
+    );
     String::from_utf8(read.stdout).expect("UTF-8")
 }
 
@@ -41,8 +58,15 @@ fn read_by(program: &Path, arguments: &[&str], folder: &Path) -> String {
 fn python_reads_dimensions_units_and_every_bit() {
     let folder = a_run();
     let script = Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/support/xarray_reads.py");
-    let said = read_by(&python(), &[&script.display().to_string(), "three.h5"], folder.path());
-    assert!(said.starts_with("3 cells x 8 times x 18 species by h5netcdf"), "{said}");
+    let said = read_by(
+        &python(),
+        &[&script.display().to_string(), "three.h5"],
+        folder.path(),
+    );
+    assert!(
+        said.starts_with("3 cells x 8 times x 18 species by h5netcdf"),
+        "{said}"
+    );
 }
 
 /// If it failed, the netCDF world (ncview, CDO, IDL, Julia ...) could not open a run.
@@ -71,7 +95,11 @@ fn ncdump_shows_dimensions_and_units() {
         assert!(said.contains(line), "no `{line}` in\n{said}");
     }
     // The values too, not only the header: the failed cell, and what it failed of.
-    let said = read_by(Path::new("ncdump"), &["-v", "status,checks/reason", "three.h5"], folder.path());
+    let said = read_by(
+        Path::new("ncdump"),
+        &["-v", "status,checks/reason", "three.h5"],
+        folder.path(),
+    );
     assert!(said.contains("status = 1, 0, 0 ;"), "{said}");
 }
 
@@ -80,7 +108,12 @@ fn ncdump_shows_dimensions_and_units() {
 fn h5dump_shows_the_same() {
     let folder = a_run();
     let said = read_by(Path::new("h5dump"), &["-H", "three.h5"], folder.path());
-    for line in ["DATASET \"abundance\"", "( 3, 8, 18 )", "GROUP \"provenance\"", "ATTRIBUTE \"DIMENSION_LIST\""] {
+    for line in [
+        "DATASET \"abundance\"",
+        "( 3, 8, 18 )",
+        "GROUP \"provenance\"",
+        "ATTRIBUTE \"DIMENSION_LIST\"",
+    ] {
         assert!(said.contains(line), "no `{line}` in\n{said}");
     }
     let dump = ["-d", "/time", "three.h5"];

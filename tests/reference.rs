@@ -36,7 +36,10 @@ fn python(arguments: &[&str]) {
         .expect("Python starts");
     let report = String::from_utf8_lossy(&output.stdout);
     let errors = String::from_utf8_lossy(&output.stderr);
-    assert!(output.status.success(), "the reference disagrees:\n{report}\n{errors}");
+    assert!(
+        output.status.success(),
+        "the reference disagrees:\n{report}\n{errors}"
+    );
     println!("{report}");
 }
 
@@ -44,7 +47,14 @@ fn python(arguments: &[&str]) {
 fn dump(run: &Prepared, path: &Path) {
     let mut out = csv::Writer::from_path(path).unwrap();
     let heads = [
-        "cell", "reaction", "change", "consumed", "products", "coefficient", "low", "high",
+        "cell",
+        "reaction",
+        "change",
+        "consumed",
+        "products",
+        "coefficient",
+        "low",
+        "high",
         "log_centre",
     ];
     out.write_record(heads).unwrap();
@@ -53,13 +63,19 @@ fn dump(run: &Prepared, path: &Path) {
         let mut falloffs = rates.coefficients.falloff.iter();
         for (r, reaction) in run.chemistry.reactions.iter().enumerate() {
             let side = |ids: &[usize]| {
-                let names = ids.iter().map(|id| run.chemistry.species[*id].name.as_str());
+                let names = ids
+                    .iter()
+                    .map(|id| run.chemistry.species[*id].name.as_str());
                 names.collect::<Vec<_>>().join(" + ")
             };
-            let is_falloff =
-                matches!(reaction.cause, frostclock::network::model::Cause::Falloff { .. });
+            let is_falloff = matches!(
+                reaction.cause,
+                frostclock::network::model::Cause::Falloff { .. }
+            );
             let limits = is_falloff.then(|| falloffs.next().unwrap());
-            let number = |pick: fn(&Falloff) -> f64| limits.map_or(String::new(), |f| format!("{:e}", pick(f)));
+            let number = |pick: fn(&Falloff) -> f64| {
+                limits.map_or(String::new(), |f| format!("{:e}", pick(f)))
+            };
             out.write_record([
                 cell.to_string(),
                 r.to_string(),
@@ -84,7 +100,11 @@ fn text(path: &Path) -> String {
 /// Integrates a case and gives its run file in `folder`.
 fn integrated(run: &Prepared, folder: &Path) -> PathBuf {
     let output = folder.join("run.h5");
-    let options = Options { threads: 2, fresh: true, retry: false };
+    let options = Options {
+        threads: 2,
+        fresh: true,
+        retry: false,
+    };
     let bars = indicatif::MultiProgress::with_draw_target(indicatif::ProgressDrawTarget::hidden());
     let summary = run::run(run, &output, &options, &bars, &StopFlag::new()).unwrap();
     assert_eq!(summary.failed, 0);
@@ -131,9 +151,19 @@ fn gas_phase_boxes_of_section_9() {
     let folder = tempfile::tempdir().unwrap();
     let network = folder.path().join("section9_network.yaml");
     let standard = text(&top().join("networks/standard.yaml"));
-    python(&["-m", "reference.section9", "strip", &standard, &text(&network)]);
+    python(&[
+        "-m",
+        "reference.section9",
+        "strip",
+        &standard,
+        &text(&network),
+    ]);
     for file in ["section9.yaml", "section9.csv"] {
-        std::fs::copy(top().join("tests/reference").join(file), folder.path().join(file)).unwrap();
+        std::fs::copy(
+            top().join("tests/reference").join(file),
+            folder.path().join(file),
+        )
+        .unwrap();
     }
     let case = case::open(&folder.path().join("section9.yaml")).unwrap_or_else(|e| panic!("{e}"));
     let run = Prepared::new(&case).unwrap_or_else(|e| panic!("{e}"));

@@ -87,14 +87,13 @@ enum Outcome {
 /// Log lines to stderr, level by `RUST_LOG` or `--quiet`, without tearing a progress bar.
 fn start_log(quiet: bool) -> MultiProgress {
     let level = if quiet { "warn" } else { "info" };
-    let mut builder =
-        env_logger::Builder::from_env(env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")));
+    let mut builder = env_logger::Builder::from_env(
+        env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")),
+    );
     let logger = builder
-        .format(|out, record| {
-            match record.level() {
-                log::Level::Info => writeln!(out, "{}", record.args()),
-                level => writeln!(out, "{}: {}", level.as_str().to_lowercase(), record.args()),
-            }
+        .format(|out, record| match record.level() {
+            log::Level::Info => writeln!(out, "{}", record.args()),
+            level => writeln!(out, "{}: {}", level.as_str().to_lowercase(), record.args()),
         })
         .build();
     let level = logger.filter();
@@ -117,7 +116,11 @@ fn check_name(output: &Path) -> Result<(), Failure> {
     if output.extension().is_some_and(|end| end == "h5") {
         return Ok(());
     }
-    Err(wrong("--output", format!("`{}`", output.display()), "a name ending in .h5"))
+    Err(wrong(
+        "--output",
+        format!("`{}`", output.display()),
+        "a name ending in .h5",
+    ))
 }
 
 /// `R,Z` in au.
@@ -125,7 +128,11 @@ fn parse_near(text: &str) -> Result<(f64, f64), Failure> {
     let numbers: Option<Vec<f64>> = text.split(',').map(|t| t.trim().parse().ok()).collect();
     match numbers.as_deref() {
         Some(&[r, z]) if r.is_finite() && z.is_finite() => Ok((r, z)),
-        _ => Err(wrong("--near", format!("`{text}`"), "radius and height in au, such as 30,2.5")),
+        _ => Err(wrong(
+            "--near",
+            format!("`{text}`"),
+            "radius and height in au, such as 30,2.5",
+        )),
     }
 }
 
@@ -138,11 +145,19 @@ fn find_cell(run: &crate::store::RunFile, near: &str) -> Result<usize, Failure> 
     let c = &cells[cell];
     log::info!(
         "cell {cell} at R = {:.4} au, z = {:.4} au: n_H = {:.3e} cm^-3, T_gas = {:.1} K, T_dust = {:.1} K",
-        c.radius, c.height, c.n_h, c.t_gas, c.t_dust
+        c.radius,
+        c.height,
+        c.n_h,
+        c.t_gas,
+        c.t_dust
     );
     let status = run.statuses()[cell];
     if status != crate::run::record::CellStatus::Done {
-        log::warn!("this cell is {}: {}", status.word().replace('_', " "), run.reasons()[cell]);
+        log::warn!(
+            "this cell is {}: {}",
+            status.word().replace('_', " "),
+            run.reasons()[cell]
+        );
     }
     Ok(cell)
 }

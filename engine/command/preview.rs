@@ -1,7 +1,7 @@
 //! The verb `preview`.
 
-use super::print::{self, Table};
 use super::Outcome;
+use super::print::{self, Table};
 use crate::case;
 use crate::disk::write_table;
 use crate::errors::Failure;
@@ -27,10 +27,17 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
     // First: whoever cannot have the file should not take the table for success.
     if let Some(path) = &arguments.csv {
         let mut file = print::create(path, "--csv")?;
-        write_table(&run.disk, &mut file).map_err(|e| Failure::machine("writing the cells", path, e))?;
+        write_table(&run.disk, &mut file)
+            .map_err(|e| Failure::machine("writing the cells", path, e))?;
         log::info!("wrote {}", path.display());
     }
-    let phase = |p| run.chemistry.species.iter().filter(|s| s.phase == p).count();
+    let phase = |p| {
+        run.chemistry
+            .species
+            .iter()
+            .filter(|s| s.phase == p)
+            .count()
+    };
     print::out(&format!(
         "{}\n{} cells, {} snapshots; {} gas species, {} ices, {} reactions",
         case.title,
@@ -51,7 +58,16 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
         let remarks = print::counted(run.warnings.len(), "remark");
         print::out(&format!("{remarks} on the network (--remarks shows them)"))?;
     }
-    let heads = ["cell", "radius [au]", "height [au]", "n_H [cm^-3]", "T_gas [K]", "T_dust [K]", "zeta [s^-1]", "UV after A_V [Draine]"];
+    let heads = [
+        "cell",
+        "radius [au]",
+        "height [au]",
+        "n_H [cm^-3]",
+        "T_gas [K]",
+        "T_dust [K]",
+        "zeta [s^-1]",
+        "UV after A_V [Draine]",
+    ];
     let mut table = Table::new(heads);
     for (i, c) in run.disk.cells.iter().enumerate() {
         // What light is left for a typical exponent of extinction, 2 per mag.

@@ -33,7 +33,10 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
         check_name(output)?;
     }
     let case = case::open(&arguments.case)?;
-    let output = arguments.output.clone().unwrap_or_else(|| case.output.clone());
+    let output = arguments
+        .output
+        .clone()
+        .unwrap_or_else(|| case.output.clone());
     let prepared = Prepared::new(&case)?;
     for warning in &prepared.warnings {
         log::debug!("network: {warning}");
@@ -46,18 +49,29 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
         log::info!("{note}");
     }
     let stop = StopFlag::new();
-    stop.listen().map_err(|e| Failure::machine("listening for signals", &output, e))?;
-    let options = Options { threads, fresh: arguments.fresh, retry: arguments.retry };
+    stop.listen()
+        .map_err(|e| Failure::machine("listening for signals", &output, e))?;
+    let options = Options {
+        threads,
+        fresh: arguments.fresh,
+        retry: arguments.retry,
+    };
     let ended = run::run(&prepared, &output, &options, bars, &stop);
     if matches!(ended, Err(Failure::Stopped(_))) {
-        let how = if arguments.fresh { "without --fresh it" } else { "the same command" };
+        let how = if arguments.fresh {
+            "without --fresh it"
+        } else {
+            "the same command"
+        };
         log::info!("stopped; {how} goes on from the finished cells");
     }
     let summary = ended?;
     if summary.failed > 0 {
         log::warn!(
             "{} of {} failed: `look {}` says where and why; `run --retry` tries them again",
-            summary.failed, counted(summary.cells, "cell"), output.display()
+            summary.failed,
+            counted(summary.cells, "cell"),
+            output.display()
         );
         return Ok(Outcome::SomeCellsFailed);
     }
@@ -71,6 +85,10 @@ fn threads(given: Option<&str>) -> Result<usize, Failure> {
     };
     match text.parse() {
         Ok(count) if count > 0 => Ok(count),
-        _ => Err(wrong("--threads", format!("`{text}`"), "a whole number, 1 or more")),
+        _ => Err(wrong(
+            "--threads",
+            format!("`{text}`"),
+            "a whole number, 1 or more",
+        )),
     }
 }

@@ -87,13 +87,20 @@ pub fn run(
     let ended = run_cells(&todo, options.threads, &compute, &mut sink, stop);
     log::info!("{}", progress.finish());
     ended?;
-    let failed = journal.finished().filter(|(_, status)| *status == CellStatus::Failed).count();
+    let failed = journal
+        .finished()
+        .filter(|(_, status)| *status == CellStatus::Failed)
+        .count();
     let records = journal.records();
     store::assemble(output, &run.header, &mut |cell| records.record(cell))?;
     if failed == 0 {
         journal.remove()?;
     }
-    Ok(Summary { cells, failed, before })
+    Ok(Summary {
+        cells,
+        failed,
+        before,
+    })
 }
 
 /// Makes a run file from a journal, finished or under way. Returns how many of how many cells.
@@ -131,11 +138,16 @@ fn already_done(
     }
     // A journal stays for the failed cells only. Any other was left by a kill: between the writing of
     // the file and the removal of the journal, or after a `--fresh` that did not come to its end.
-    if journal.exists() && (failed == 0 || journal::read_only(journal)?.finished().count() < cells) {
+    if journal.exists() && (failed == 0 || journal::read_only(journal)?.finished().count() < cells)
+    {
         return Ok(None);
     }
     log::info!("{} holds this run already: nothing to do", output.display());
-    Ok(Some(Summary { cells, failed, before: cells }))
+    Ok(Some(Summary {
+        cells,
+        failed,
+        before: cells,
+    }))
 }
 
 /// A folder that is missing is said before hours of work, not after. Whether it can be written to

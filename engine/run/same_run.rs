@@ -108,8 +108,9 @@ fn conditions(header: &RunHeader, cell: usize) -> Vec<(String, f64)> {
         return Vec::new();
     };
     let plain = CELL_NUMBERS.iter().zip(cell_numbers(cell));
-    let mut all: Vec<_> =
-        plain.map(|((name, unit, _), value)| (format!("{name} [{unit}]"), value)).collect();
+    let mut all: Vec<_> = plain
+        .map(|((name, unit, _), value)| (format!("{name} [{unit}]"), value))
+        .collect();
     for (field, light) in header.disk.fields.iter().zip(&cell.light) {
         let field = &field.name;
         all.push((format!("UV_{field} [Draine]"), light.strength));
@@ -127,9 +128,14 @@ fn conditions(header: &RunHeader, cell: usize) -> Vec<(String, f64)> {
 /// Those conditions of a cell that differ, as each of the two has them.
 fn differing_conditions(then: &RunHeader, now: &RunHeader, cell: usize) -> (String, String) {
     let (then, now) = (conditions(then, cell), conditions(now, cell));
-    let pairs = then.iter().zip(&now).filter(|(t, n)| t.0 != n.0 || t.1.to_bits() != n.1.to_bits());
+    let pairs = then
+        .iter()
+        .zip(&now)
+        .filter(|(t, n)| t.0 != n.0 || t.1.to_bits() != n.1.to_bits());
     let word = |(name, value): &(String, f64)| format!("{name} {}", number_text(*value));
-    let (then, now): (Vec<_>, Vec<_>) =
-        pairs.take(LINES_SHOWN).map(|(t, n)| (word(t), word(n))).unzip();
+    let (then, now): (Vec<_>, Vec<_>) = pairs
+        .take(LINES_SHOWN)
+        .map(|(t, n)| (word(t), word(n)))
+        .unzip();
     (then.join(", "), now.join(", "))
 }

@@ -88,7 +88,11 @@ pub fn check_target(path: &Path) -> Result<(), Failure> {
         Ok(()) => Ok(()),
         Err(_) if !path.exists() => Ok(()),
         Err(Failure::Input(_)) => {
-            let found = if path.is_dir() { "a folder" } else { "a file that is no run of frostclock" };
+            let found = if path.is_dir() {
+                "a folder"
+            } else {
+                "a file that is no run of frostclock"
+            };
             let expected = "a run to replace, or no file (it is left as it is)";
             Err(InputError::new(path, None, "output", found, expected).into())
         }

@@ -45,7 +45,9 @@ pub fn require_space(path: &Path, needed: u64) -> Result<(), Failure> {
 /// The failure of a creation at `path`, which `entry` of the input names: a place where nothing may
 /// be written is the user's mistake, anything else the machine's.
 pub fn not_created(path: &Path, entry: &str, doing: &str, cause: io::Error) -> Failure {
-    use io::ErrorKind::{IsADirectory, NotADirectory, NotFound, PermissionDenied, ReadOnlyFilesystem};
+    use io::ErrorKind::{
+        IsADirectory, NotADirectory, NotFound, PermissionDenied, ReadOnlyFilesystem,
+    };
     let expected = "a place that can be written to";
     match cause.kind() {
         IsADirectory => {
@@ -67,15 +69,26 @@ const PART: &str = ".part-";
 /// Removes the part files that killed processes left beside `target`. Never one in use: HDF5 locks
 /// what it has open, and whoever loses its file otherwise can only say so, for `target` is written.
 pub fn remove_leftovers(target: &Path) {
-    let Some(name) = target.file_name() else { return };
+    let Some(name) = target.file_name() else {
+        return;
+    };
     let start = format!("{}{PART}", name.to_string_lossy());
-    let Ok(entries) = std::fs::read_dir(directory_of(target)) else { return };
+    let Ok(entries) = std::fs::read_dir(directory_of(target)) else {
+        return;
+    };
     for entry in entries.flatten() {
-        let rest = entry.file_name().to_string_lossy().strip_prefix(&start).map(str::to_string);
+        let rest = entry
+            .file_name()
+            .to_string_lossy()
+            .strip_prefix(&start)
+            .map(str::to_string);
         // `<process>-<number>` and nothing else.
-        let ours = rest.as_deref().and_then(|rest| rest.split_once('-')).is_some_and(|(process, number)| {
-            process.parse::<u32>().is_ok() && number.parse::<u32>().is_ok()
-        });
+        let ours = rest
+            .as_deref()
+            .and_then(|rest| rest.split_once('-'))
+            .is_some_and(|(process, number)| {
+                process.parse::<u32>().is_ok() && number.parse::<u32>().is_ok()
+            });
         let part = entry.path();
         let idle = || {
             let locked = File::open(&part).map(|file| file.try_lock_exclusive());

@@ -16,7 +16,11 @@ use tempfile::TempDir;
 /// The command, to be run in `folder`. No variable of the environment changes what it says.
 pub fn command(folder: &Path, arguments: &[&str]) -> Command {
     let mut command = Command::new(env!("CARGO_BIN_EXE_frostclock"));
-    command.current_dir(folder).args(arguments).env_remove("RUST_LOG").stdin(Stdio::null());
+    command
+        .current_dir(folder)
+        .args(arguments)
+        .env_remove("RUST_LOG")
+        .stdin(Stdio::null());
     command
 }
 
@@ -31,17 +35,28 @@ pub struct Ended {
 
 /// Runs the command to its end.
 pub fn frostclock(folder: &Path, arguments: &[&str]) -> Ended {
-    ended(command(folder, arguments).output().expect("the command starts"))
+    ended(
+        command(folder, arguments)
+            .output()
+            .expect("the command starts"),
+    )
 }
 
 fn ended(output: Output) -> Ended {
     let text = |bytes: Vec<u8>| String::from_utf8(bytes).expect("what it says is UTF-8");
-    Ended { status: shell_status(output.status), out: text(output.stdout), err: text(output.stderr) }
+    Ended {
+        status: shell_status(output.status),
+        out: text(output.stdout),
+        err: text(output.stderr),
+    }
 }
 
 pub fn shell_status(status: ExitStatus) -> i32 {
     use std::os::unix::process::ExitStatusExt;
-    status.code().or(status.signal().map(|signal| 128 + signal)).expect("it ended")
+    status
+        .code()
+        .or(status.signal().map(|signal| 128 + signal))
+        .expect("it ended")
 }
 
 /// Runs the command to its end and insists on success.
@@ -53,13 +68,23 @@ pub fn succeeds(folder: &Path, arguments: &[&str]) -> Ended {
 
 /// Sends a signal (`INT`, `TERM`, `KILL`) to a child that has not been waited for.
 pub fn send(signal: &str, child: &Child) {
-    let sent = Command::new("kill").args(["-s", signal, &child.id().to_string()]).status();
-    assert!(sent.expect("kill runs").success(), "no {signal} for {}", child.id());
+    let sent = Command::new("kill")
+        .args(["-s", signal, &child.id().to_string()])
+        .status();
+    assert!(
+        sent.expect("kill runs").success(),
+        "no {signal} for {}",
+        child.id()
+    );
 }
 
 /// A folder holding the case `three.yaml`: three cells, the smallest network, milliseconds.
 pub fn three_places() -> TempDir {
-    folder_with(&["tests/data/three.yaml", "tests/data/three.csv", "tests/data/mini.yaml"])
+    folder_with(&[
+        "tests/data/three.yaml",
+        "tests/data/three.csv",
+        "tests/data/mini.yaml",
+    ])
 }
 
 /// A folder with copies of files of the repository.
@@ -79,7 +104,12 @@ pub fn edit(file: &Path, old: &str, new: &str) {
         return fs::write(file, new).expect("written");
     }
     let text = fs::read_to_string(file).expect("read");
-    assert_eq!(text.matches(old).count(), 1, "`{old}` in {}", file.display());
+    assert_eq!(
+        text.matches(old).count(),
+        1,
+        "`{old}` in {}",
+        file.display()
+    );
     fs::write(file, text.replace(old, new)).expect("written");
 }
 
@@ -110,7 +140,12 @@ pub fn datasets(path: &Path) -> BTreeMap<String, Vec<u8>> {
     let file = hdf5::File::open(path).unwrap_or_else(|e| panic!("{}: {e}", path.display()));
     let mut found = BTreeMap::new();
     collect(&file, &mut found);
-    assert!(found.len() > 20, "only {} datasets in {}", found.len(), path.display());
+    assert!(
+        found.len() > 20,
+        "only {} datasets in {}",
+        found.len(),
+        path.display()
+    );
     found
 }
 
@@ -124,10 +159,18 @@ fn collect(group: &hdf5::Group, found: &mut BTreeMap<String, Vec<u8>>) {
 }
 
 fn bytes(dataset: &hdf5::Dataset) -> Vec<u8> {
-    let kind = dataset.dtype().and_then(|t| t.to_descriptor()).expect("a known type");
+    let kind = dataset
+        .dtype()
+        .and_then(|t| t.to_descriptor())
+        .expect("a known type");
     macro_rules! raw {
         ($number:ty) => {
-            dataset.read_raw::<$number>().expect("read").iter().flat_map(|n| n.to_le_bytes()).collect()
+            dataset
+                .read_raw::<$number>()
+                .expect("read")
+                .iter()
+                .flat_map(|n| n.to_le_bytes())
+                .collect()
         };
     }
     match kind {
@@ -140,7 +183,10 @@ fn bytes(dataset: &hdf5::Dataset) -> Vec<u8> {
         TypeDescriptor::Unsigned(IntSize::U8) => raw!(u64),
         TypeDescriptor::VarLenUnicode => {
             let texts = dataset.read_raw::<VarLenUnicode>().expect("read");
-            texts.iter().flat_map(|t| format!("{}:{}", t.len(), t.as_str()).into_bytes()).collect()
+            texts
+                .iter()
+                .flat_map(|t| format!("{}:{}", t.len(), t.as_str()).into_bytes())
+                .collect()
         }
         other => panic!("{} holds {other:?}", dataset.name()),
     }
@@ -152,13 +198,24 @@ pub fn assert_same_run(one: &Path, other: &Path) {
     for all in [&mut one, &mut other] {
         assert!(all.remove("/work/seconds").is_some(), "no /work/seconds");
     }
-    assert!(one.keys().eq(other.keys()), "{:?}\n{:?}", one.keys(), other.keys());
-    let differ: Vec<_> = one.iter().filter(|(name, bytes)| other[*name] != **bytes).map(|(n, _)| n).collect();
+    assert!(
+        one.keys().eq(other.keys()),
+        "{:?}\n{:?}",
+        one.keys(),
+        other.keys()
+    );
+    let differ: Vec<_> = one
+        .iter()
+        .filter(|(name, bytes)| other[*name] != **bytes)
+        .map(|(n, _)| n)
+        .collect();
     assert!(differ.is_empty(), "these differ: {differ:?}");
 }
 
 /// The Python of `tools/test`, with what its readers need.
 pub fn python() -> PathBuf {
     let python = std::env::var_os("FROSTCLOCK_PYTHON");
-    PathBuf::from(python.expect("FROSTCLOCK_PYTHON is not set: run these tests with `sh tools/test`"))
+    PathBuf::from(
+        python.expect("FROSTCLOCK_PYTHON is not set: run these tests with `sh tools/test`"),
+    )
 }

@@ -2,7 +2,7 @@
 
 use super::{expanded, small};
 use crate::network::check::imbalance;
-use crate::network::model::{Barrier, Cause, Chemistry, GrainOptions, Phase, Reaction, Species, SpeciesId};
+use crate::network::model::{Cause, Chemistry, GrainOptions, Phase, Reaction, Species, SpeciesId};
 use crate::network::{expand, read};
 use std::collections::BTreeMap;
 use std::path::Path;
@@ -280,12 +280,12 @@ fn surface_causes_follow_line_and_options() {
                 first,
                 second,
                 same,
+                share,
                 own,
-                channels,
+                barriers,
             } => {
-                assert!(channels.len() == 1, "one channel of the pair in this network");
-                let Barrier { height, width, mass, share } = own;
-                (first, second, same, height, width, mass, share)
+                assert_eq!(barriers, [own]);
+                (first, second, same, own.height, own.width, own.mass, share)
             }
             other => panic!("{other:?}"),
         };
