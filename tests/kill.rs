@@ -150,7 +150,7 @@ fn a_signal_ends_a_run_with_its_status_and_keeps_the_cells() {
         assert!(
             again
                 .err
-                .contains(&format!("going on from {kept} finished cell")),
+                .contains(&format!("{kept} of 24 cells are finished: going on")),
             "{}",
             again.err
         );

@@ -12,6 +12,7 @@ mod print;
 mod run;
 
 use crate::errors::{Failure, InputError};
+use crate::run::record::CellStatus;
 use clap::{Parser, Subcommand};
 use indicatif::MultiProgress;
 use std::io::Write;
@@ -152,12 +153,10 @@ fn find_cell(run: &crate::store::RunFile, near: &str) -> Result<usize, Failure> 
         c.t_dust
     );
     let status = run.statuses()[cell];
-    if status != crate::run::record::CellStatus::Done {
-        log::warn!(
-            "this cell is {}: {}",
-            status.word().replace('_', " "),
-            run.reasons()[cell]
-        );
+    match status {
+        CellStatus::Done => {}
+        CellStatus::Failed => log::warn!("this cell failed: {}", run.reasons()[cell]),
+        CellStatus::Missing => log::warn!("this cell has not been run"),
     }
     Ok(cell)
 }

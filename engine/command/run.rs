@@ -8,6 +8,7 @@ use crate::run::signals::StopFlag;
 use crate::run::{self, Options, Prepared};
 use indicatif::MultiProgress;
 use std::path::PathBuf;
+use std::time::Duration;
 
 #[derive(Debug, clap::Args)]
 pub struct Arguments {
@@ -51,6 +52,7 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
     let stop = StopFlag::new();
     stop.listen()
         .map_err(|e| Failure::machine("listening for signals", &output, e))?;
+    say_when_stopping(&stop);
     let options = Options {
         threads,
         fresh: arguments.fresh,
@@ -77,6 +79,18 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
     }
     log::info!("{} in {}", counted(summary.cells, "cell"), output.display());
     Ok(Outcome::Done)
+}
+
+/// A cell under way may take a while to end: say that the signal was heard.
+fn say_when_stopping(stop: &StopFlag) {
+    let stop = stop.clone();
+    // Never joined: it ends with the process.
+    std::thread::spawn(move || {
+        while stop.signal().is_none() {
+            std::thread::sleep(Duration::from_millis(100));
+        }
+        log::info!("stopping after the cells under way; a second signal ends it at once");
+    });
 }
 
 fn threads(given: Option<&str>) -> Result<usize, Failure> {

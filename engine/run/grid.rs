@@ -71,7 +71,7 @@ pub fn run(
     let todo: Vec<usize> = (0..cells).filter(|cell| todo[*cell]).collect();
     let before = cells - todo.len();
     if before > 0 {
-        log::info!("going on from {before} finished cells of {cells}");
+        log::info!("{before} of {cells} cells are finished: going on from there");
     }
     let mut progress = Progress::start(bars, cells, before);
     let mut sink = |record: CellRecord| {

@@ -6,6 +6,7 @@
 // Each test program uses its own part of this.
 #![allow(dead_code)]
 
+use frostclock::store::{self, RunFile};
 use hdf5::types::{FloatSize, IntSize, TypeDescriptor, VarLenUnicode};
 use std::collections::BTreeMap;
 use std::fs;
@@ -85,6 +86,14 @@ pub fn three_places() -> TempDir {
         "tests/data/three.csv",
         "tests/data/mini.yaml",
     ])
+}
+
+/// That case, run.
+pub fn finished() -> (TempDir, RunFile) {
+    let folder = three_places();
+    succeeds(folder.path(), &["run", "three.yaml"]);
+    let run = store::open(&folder.path().join("three.h5")).expect("a run file");
+    (folder, run)
 }
 
 /// A folder with copies of files of the repository.
@@ -210,6 +219,25 @@ pub fn assert_same_run(one: &Path, other: &Path) {
         .map(|(n, _)| n)
         .collect();
     assert!(differ.is_empty(), "these differ: {differ:?}");
+}
+
+/// A CSV: heads, and rows by the text of their first cell.
+pub fn csv(path: &Path) -> (Vec<String>, BTreeMap<String, Vec<String>>) {
+    let mut reader = csv::Reader::from_path(path).expect("a CSV");
+    let heads = reader
+        .headers()
+        .expect("heads")
+        .iter()
+        .map(String::from)
+        .collect();
+    let row =
+        |record: csv::StringRecord| -> Vec<String> { record.iter().map(String::from).collect() };
+    let rows = reader
+        .records()
+        .map(|r| row(r.expect("a row")))
+        .map(|r| (r[0].clone(), r))
+        .collect();
+    (heads, rows)
 }
 
 /// The Python of `tools/test`, with what its readers need.
