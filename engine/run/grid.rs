@@ -10,8 +10,8 @@ use super::record::{CellRecord, CellStatus};
 use super::signals::StopFlag;
 use super::workers::run_cells;
 use crate::errors::{Failure, InputError, in_words};
-use crate::store;
 use crate::store::durable::directory_of;
+use crate::store::{self, RunHeader};
 use indicatif::MultiProgress;
 use std::path::{Path, PathBuf};
 
@@ -110,8 +110,38 @@ pub fn gather(journal: &Path, output: &Path) -> Result<(usize, usize), Failure> 
     let mut records = journal::read_only(journal)?;
     let finished = records.finished().count();
     let header = records.header().clone();
+    check_gathered(output, &header, finished)?;
     store::assemble(output, &header, &mut |cell| records.record(cell))?;
     Ok((finished, header.disk.cells.len()))
+}
+
+/// A gathered file may replace an earlier one of the same run, but never what holds more than it.
+fn check_gathered(output: &Path, header: &RunHeader, finished: usize) -> Result<(), Failure> {
+    if !output.exists() {
+        return Ok(());
+    }
+    let there = store::open(output)?;
+    let wrong = |found: String| {
+        let expected = "another --output, or no file (it is left as it is)";
+        Err(InputError::new(output, None, "output", found, expected).into())
+    };
+    if there.input_hash() != header.input_hash() {
+        return wrong(format!(
+            "a run of other inputs (`{}`)",
+            there.header().title
+        ));
+    }
+    let run = there
+        .statuses()
+        .iter()
+        .filter(|s| **s != CellStatus::Missing)
+        .count();
+    if run > finished {
+        return wrong(format!(
+            "{run} cells of this run, and {finished} in the journal"
+        ));
+    }
+    Ok(())
 }
 
 /// Whether `output` already holds this very run; an input error if it holds another.
@@ -142,7 +172,16 @@ fn already_done(
     {
         return Ok(None);
     }
-    log::info!("{} holds this run already: nothing to do", output.display());
+    let by = &there.header().engine_version;
+    let other = if *by == run.header.engine_version {
+        String::new()
+    } else {
+        format!(" (computed by version {by}; --fresh computes it with this one)")
+    };
+    log::info!(
+        "{} holds this run already: nothing to do{other}",
+        output.display()
+    );
     Ok(Some(Summary {
         cells,
         failed,

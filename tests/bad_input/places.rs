@@ -289,6 +289,29 @@ pub const PLACED: &[Mistake] = &[
         &["--output", "the journal itself", "another file"],
     ),
     placed(
+        "a finished run as the output of gather",
+        journal_of_the_case,
+        &["gather", "three.journal", "--output", "done.h5"],
+        &[
+            "done.h5: output",
+            "3 cells of this run, and 0 in the journal",
+            "another --output",
+        ],
+    ),
+    placed(
+        "the run of another case as the output of gather",
+        |folder| {
+            edit(&folder.join("three.yaml"), "1 kyr", "2 kyr");
+            journal_of_the_case(folder);
+        },
+        &["gather", "three.journal", "--output", "done.h5"],
+        &[
+            "done.h5: output",
+            "a run of other inputs (`Three places in a thimble`)",
+            "another --output",
+        ],
+    ),
+    placed(
         "a table as the output of gather",
         journal_of_the_case,
         &["gather", "three.journal", "--output", "three.csv"],
