@@ -356,7 +356,10 @@ mod tests {
         assert!((totals["H"] - 1.000_001).abs() < 1e-12);
         assert!((totals["C"] - 1.3e-4).abs() < 1e-15 && (totals["O"] - 1.3e-4).abs() < 1e-15);
         let notes = start_notes(&chemistry, &state);
-        assert!(notes.len() == 1 && notes[0].contains("H 1.0000e0"), "{notes:?}");
+        assert!(
+            notes.len() == 1 && notes[0].contains("H 1.0000e0"),
+            "{notes:?}"
+        );
         // Per H2 instead of per H nucleus: the slip the note is for.
         let twice = start_state(&choice(&[("H2", 1.0)]), &[], &chemistry, 1.8e-12).unwrap();
         assert_eq!(start_notes(&chemistry, &twice).len(), 2);
