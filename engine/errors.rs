@@ -56,6 +56,8 @@ impl fmt::Display for InputError {
     }
 }
 
+impl std::error::Error for InputError {}
+
 /// Why a command could not do its work.
 #[derive(Debug)]
 pub enum Failure {
