@@ -89,11 +89,21 @@ impl Failure {
 
     /// A machine failure while `doing` something with `path`.
     pub fn machine(doing: impl Into<String>, path: &Path, cause: impl fmt::Display) -> Self {
+        let cause = in_words(&cause);
         Failure::Machine {
             doing: doing.into(),
             path: path.to_path_buf(),
-            cause: cause.to_string(),
+            cause,
         }
+    }
+}
+
+/// What the system said, without the number of its error.
+pub fn in_words(cause: &impl fmt::Display) -> String {
+    let text = cause.to_string();
+    match text.rfind(" (os error ") {
+        Some(end) => text[..end].to_string(),
+        None => text,
     }
 }
 

@@ -120,6 +120,8 @@ fn coefficients_agree_in_three_very_different_cells() {
     dump(&prepared("three_cells.yaml"), &file);
     let case = text(&top().join("tests/reference/three_cells.yaml"));
     check(&["coefficients", &case, "--rust", &text(&file)]);
+    // The comparison is worth something only if it sees errors: 45 planted ones, each found.
+    python(&["-m", "reference.planted", &case, "--rust", &text(&file)]);
 }
 
 /// Fails if the integration is off: better than 1 % at five times for neutrals above 1e-12 and

@@ -99,9 +99,10 @@ pub fn overview(run: &RunFile) -> Result<Vec<Line>, Failure> {
         let counts = cautions.iter().filter_map(|c| c.get(i).copied());
         let (cells, most) = counts.fold((0, 0), |(n, m), c| (n + u32::from(c > 0), m.max(c)));
         if cells > 0 {
+            let plural = if cells == 1 { "" } else { "s" };
             say(
                 "caution",
-                format!("{name}: in {cells} cells, up to {most} in one"),
+                format!("{name}: in {cells} cell{plural}, up to {most} in one"),
             );
         }
     }

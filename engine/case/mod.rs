@@ -44,6 +44,8 @@ pub struct Case {
     pub colliders: Option<f64>,
     /// With the columns of every species a case may name; see [`Case::disk_for`].
     pub disk: Disk,
+    /// Where each field of the disk is given, 1-based, for errors.
+    pub field_lines: Vec<Option<usize>>,
     /// The cell table as read, if the disk is one.
     pub table_text: Option<String>,
     pub start: StartChoice,
@@ -115,6 +117,12 @@ pub fn read(path: &Path, text: &str, files: Files) -> Result<Case, Failure> {
     ]
     .concat();
     let mut notes = check.notes();
+    let field_lines = (0..disk.disk.fields.len())
+        .map(|i| match file.disk.recipe {
+            None => check.line(&format!("disk.fields[{i}].spectrum")),
+            Some(_) => check.line("disk.recipe.light.star.spectrum"),
+        })
+        .collect();
     notes.extend(disk.notes);
     Ok(Case {
         title: file.title,
@@ -126,6 +134,7 @@ pub fn read(path: &Path, text: &str, files: Files) -> Result<Case, Failure> {
         turbulence: gas.value.0,
         colliders: gas.value.1,
         disk: disk.disk,
+        field_lines,
         table_text: disk.table_text,
         start: start.value,
         snapshots: clock.value,
@@ -207,11 +216,11 @@ fn file_text(
 impl Case {
     /// The disk as `chemistry` needs it: columns in its order, every spectrum known to it.
     pub fn disk_for(&self, chemistry: &Chemistry) -> Result<Disk, InputError> {
-        for field in &self.disk.fields {
+        for (i, field) in self.disk.fields.iter().enumerate() {
             if !chemistry.spectra.contains(&field.spectrum) {
                 return Err(InputError::new(
                     &self.path,
-                    None,
+                    self.field_lines.get(i).copied().flatten(),
                     format!("spectrum of the field `{}`", field.name),
                     format!("`{}`, which the network does not know", field.spectrum),
                     format!("one of {}", chemistry.spectra.join(", ")),

@@ -1,6 +1,6 @@
 //! The verb `at`.
 
-use super::print::{Table, abundance, exact};
+use super::print::{Table, abundance, exact, years};
 use super::{Outcome, find_cell, wrong};
 use crate::answers::interpolate::{self, Place};
 use crate::answers::select;
@@ -15,7 +15,7 @@ pub struct Arguments {
     /// A run file
     file: PathBuf,
     /// When, such as "1 Myr"
-    #[arg(long)]
+    #[arg(long, allow_hyphen_values = true)]
     time: String,
     /// One cell: the nearest to this radius and height, au [default: all cells]
     #[arg(long, value_name = "R,Z", allow_hyphen_values = true)]
@@ -39,28 +39,33 @@ pub fn at(arguments: &Arguments) -> Result<Outcome, Failure> {
     let place = interpolate::place(times, time).ok_or_else(|| {
         let (first, last) = (times.first().copied(), times.last().copied());
         let expected = format!(
-            "a time within the run, {} yr to {:e} yr",
-            first.unwrap_or(0.0),
-            last.unwrap_or(0.0)
+            "a time within the run, {} to {}",
+            years(first.unwrap_or(0.0)),
+            years(last.unwrap_or(0.0))
         );
         wrong("--time", format!("`{}`", arguments.time), expected)
     })?;
-    match place {
-        Place::Snapshot(i) => log::info!("snapshot {i} at {:e} yr", times[i]),
-        Place::After(i) => log::info!(
-            "interpolated between the snapshots at {:e} and {:e} yr; such values need not close \
-             element sums",
-            times[i],
-            times[i + 1]
-        ),
-    }
     let wanted = arguments
         .species
         .as_deref()
         .map(|l| select::species(run.header(), l))
         .transpose()?;
-    match &arguments.near {
-        Some(near) => one_cell(&run, find_cell(&run, near)?, time, wanted, arguments)?,
+    let cell = arguments
+        .near
+        .as_deref()
+        .map(|near| find_cell(&run, near))
+        .transpose()?;
+    match place {
+        Place::Snapshot(i) => log::info!("snapshot {i} at {}", years(times[i])),
+        Place::After(i) => log::info!(
+            "interpolated between the snapshots at {} and {}; such values need not close element \
+             sums",
+            years(times[i]),
+            years(times[i + 1])
+        ),
+    }
+    match cell {
+        Some(cell) => one_cell(&run, cell, time, wanted, arguments)?,
         None => all_cells(&run, time, wanted, arguments)?,
     }
     Ok(Outcome::Done)
@@ -116,8 +121,10 @@ fn one_cell(
             density,
         ]);
     }
-    table.print()?;
-    arguments.csv.as_ref().map_or(Ok(()), |path| full.csv(path))
+    if let Some(path) = &arguments.csv {
+        full.csv(path)?;
+    }
+    table.print()
 }
 
 fn all_cells(
@@ -169,8 +176,10 @@ fn all_cells(
         full.rows
             .push(row(long, listed.iter().map(|id| exact(x[*id])).collect()));
     }
-    table.print()?;
-    arguments.csv.as_ref().map_or(Ok(()), |path| full.csv(path))
+    if let Some(path) = &arguments.csv {
+        full.csv(path)?;
+    }
+    table.print()
 }
 
 /// The species with the largest sums over all cells, without H, H2, He, grains and the ice total.

@@ -1,6 +1,6 @@
 //! The verb `gather`.
 
-use super::{Outcome, wrong};
+use super::{Outcome, check_name, wrong};
 use crate::errors::Failure;
 use crate::run;
 use std::path::PathBuf;
@@ -10,7 +10,7 @@ pub struct Arguments {
     /// The journal of the run (beside its output, ending in .journal)
     journal: PathBuf,
     /// The run file to write [default: NAME.partial.h5 beside the journal]
-    #[arg(long)]
+    #[arg(long, value_name = "FILE")]
     output: Option<PathBuf>,
 }
 
@@ -22,6 +22,7 @@ pub fn gather(arguments: &Arguments) -> Result<Outcome, Failure> {
     if output == arguments.journal {
         return Err(wrong("--output", "the journal itself", "another file"));
     }
+    check_name(&output)?;
     let (finished, cells) = run::gather(&arguments.journal, &output)?;
     log::info!("{finished} of {cells} cells in {}", output.display());
     Ok(Outcome::Done)

@@ -50,9 +50,9 @@ pub fn history(arguments: &Arguments) -> Result<Outcome, Failure> {
             .push(row(format!("{time:.4e}"), &|x| abundance(x, floor)));
         full.rows.push(row(format!("{time:e}"), &exact));
     }
-    shown.print()?;
     if let Some(path) = &arguments.csv {
         full.csv(path)?;
     }
+    shown.print()?;
     Ok(Outcome::Done)
 }

@@ -12,8 +12,10 @@ mod print;
 mod run;
 
 use crate::errors::{Failure, InputError};
+use crate::run::record::CellStatus;
 use clap::{Parser, Subcommand};
 use indicatif::MultiProgress;
+use std::io::Write;
 use std::path::Path;
 
 /// Gas and ice of planet-forming disks at the age you ask for.
@@ -69,7 +71,8 @@ pub fn main() -> u8 {
         Ok(Outcome::Done) => 0,
         Ok(Outcome::SomeCellsFailed) => 1,
         Err(failure) => {
-            eprintln!("frostclock: {failure}");
+            // Nobody may be reading: no reason to panic as `eprintln!` would.
+            let _ = writeln!(std::io::stderr(), "frostclock: {failure}");
             failure.exit_code()
         }
     }
@@ -89,12 +92,9 @@ fn start_log(quiet: bool) -> MultiProgress {
         env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")),
     );
     let logger = builder
-        .format(|out, record| {
-            use std::io::Write;
-            match record.level() {
-                log::Level::Info => writeln!(out, "{}", record.args()),
-                level => writeln!(out, "{}: {}", level.as_str().to_lowercase(), record.args()),
-            }
+        .format(|out, record| match record.level() {
+            log::Level::Info => writeln!(out, "{}", record.args()),
+            level => writeln!(out, "{}: {}", level.as_str().to_lowercase(), record.args()),
         })
         .build();
     let level = logger.filter();
@@ -110,6 +110,18 @@ fn start_log(quiet: bool) -> MultiProgress {
 /// A wrong command-line argument.
 fn wrong(option: &str, found: impl Into<String>, expected: impl Into<String>) -> Failure {
     InputError::new(Path::new(""), None, option, found, expected).into()
+}
+
+/// Refuses a run file whose name would not say what it is.
+fn check_name(output: &Path) -> Result<(), Failure> {
+    if output.extension().is_some_and(|end| end == "h5") {
+        return Ok(());
+    }
+    Err(wrong(
+        "--output",
+        format!("`{}`", output.display()),
+        "a name ending in .h5",
+    ))
 }
 
 /// `R,Z` in au.
@@ -141,12 +153,10 @@ fn find_cell(run: &crate::store::RunFile, near: &str) -> Result<usize, Failure> 
         c.t_dust
     );
     let status = run.statuses()[cell];
-    if status != crate::run::record::CellStatus::Done {
-        log::warn!(
-            "this cell is {}: {}",
-            status.word().replace('_', " "),
-            run.reasons()[cell]
-        );
+    match status {
+        CellStatus::Done => {}
+        CellStatus::Failed => log::warn!("this cell failed: {}", run.reasons()[cell]),
+        CellStatus::Missing => log::warn!("this cell has not been run"),
     }
     Ok(cell)
 }

@@ -24,6 +24,13 @@ pub struct Arguments {
 pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
     let case = case::open(&arguments.case)?;
     let run = Prepared::new(&case)?;
+    // First: whoever cannot have the file should not take the table for success.
+    if let Some(path) = &arguments.csv {
+        let mut file = print::create(path, "--csv")?;
+        write_table(&run.disk, &mut file)
+            .map_err(|e| Failure::machine("writing the cells", path, e))?;
+        log::info!("wrote {}", path.display());
+    }
     let phase = |p| {
         run.chemistry
             .species
@@ -48,10 +55,8 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
             print::out(&warning.to_string())?;
         }
     } else if !run.warnings.is_empty() {
-        print::out(&format!(
-            "{} remarks on the network (--remarks shows them)",
-            run.warnings.len()
-        ))?;
+        let remarks = print::counted(run.warnings.len(), "remark");
+        print::out(&format!("{remarks} on the network (--remarks shows them)"))?;
     }
     let heads = [
         "cell",
@@ -81,11 +86,5 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
         ]);
     }
     table.print()?;
-    if let Some(path) = &arguments.csv {
-        let mut file = print::create(path, "--csv")?;
-        write_table(&run.disk, &mut file)
-            .map_err(|e| Failure::machine("writing the cells", path, e))?;
-        log::info!("wrote {}", path.display());
-    }
     Ok(Outcome::Done)
 }

@@ -3,7 +3,7 @@
 //! It never chooses what to show.
 
 use super::wrong;
-use crate::errors::Failure;
+use crate::errors::{Failure, in_words};
 use std::io::{self, Write};
 use std::path::Path;
 
@@ -62,12 +62,20 @@ impl Table {
 }
 
 /// Creates a result file the user named with `option`; a folder that is not there is their mistake.
+/// Whatever is there is replaced, so that a slip must not name a run, a case or a table of cells.
 pub fn create(path: &Path, option: &str) -> Result<std::fs::File, Failure> {
+    let named = path.extension().is_some_and(|end| end == "csv");
+    // Pipes and terminals (`/dev/stdout`) hold nothing to lose.
+    let special = std::fs::metadata(path).is_ok_and(|data| !data.is_file() && !data.is_dir());
+    if !named && !special {
+        let found = format!("`{}`", path.display());
+        return Err(wrong(option, found, "a name ending in .csv"));
+    }
     std::fs::File::create(path).map_err(|cause| match cause.kind() {
         io::ErrorKind::StorageFull => Failure::machine("creating it", path, cause),
         _ => wrong(
             option,
-            format!("{} ({cause})", path.display()),
+            format!("`{}` ({})", path.display(), in_words(&cause)),
             "a file that can be written",
         ),
     })
@@ -89,6 +97,22 @@ pub fn abundance(value: Option<f64>, floor: f64) -> String {
         None => "-".to_string(),
         Some(x) if x <= floor => format!("< {floor:.0e}"),
         Some(x) => format!("{x:.3e}"),
+    }
+}
+
+/// A number of things, `s` added where it takes one.
+pub fn counted(count: usize, thing: &str) -> String {
+    let many = if count == 1 { "" } else { "s" };
+    format!("{count} {thing}{many}")
+}
+
+/// A time for people, to five digits.
+pub fn years(time: f64) -> String {
+    let rounded: f64 = format!("{time:.4e}").parse().unwrap_or(time);
+    if rounded == 0.0 || (1.0e-3..1.0e6).contains(&rounded.abs()) {
+        format!("{rounded} yr")
+    } else {
+        format!("{rounded:e} yr")
     }
 }
 

@@ -84,7 +84,7 @@ mod tests {
         // (alpha A^3, dipole D, reduced mass amu, k at 10 K, k at 300 K)
         let h3 = 3.024;
         let reduced = |m: f64| h3 * m / (h3 + m);
-        let cases = [
+        let cases: [(f64, f64, f64, f64, f64); 4] = [
             (1.45, 1.855, reduced(18.015), 2.5579e-8, 5.5582e-9), // H3+ + H2O
             (2.59, 2.985, reduced(27.026), 3.9873e-8, 8.4380e-9), // H3+ + HCN
             (
@@ -103,7 +103,11 @@ mod tests {
             ), // C+ + H2O
         ];
         for (alpha, dipole, mu, at_10, at_300) in cases {
+<<<<<<< HEAD
             let langevin = 2.342e-9 * f64::sqrt(alpha / mu);
+=======
+            let langevin = 2.342e-9 * (alpha / mu).sqrt();
+>>>>>>> main
             let x =
                 dipole * 1e-18 / (2.0 * alpha * 1e-24 * crate::units::BOLTZMANN * 300.0f64).sqrt();
             for (t, expected) in [(10.0, at_10), (300.0, at_300)] {

@@ -9,8 +9,9 @@ use super::progress::Progress;
 use super::record::{CellRecord, CellStatus};
 use super::signals::StopFlag;
 use super::workers::run_cells;
-use crate::errors::{Failure, InputError};
-use crate::store;
+use crate::errors::{Failure, InputError, in_words};
+use crate::store::durable::directory_of;
+use crate::store::{self, RunHeader};
 use indicatif::MultiProgress;
 use std::path::{Path, PathBuf};
 
@@ -57,6 +58,7 @@ pub fn run(
     let cells = run.disk.cells.len();
     let journal_path = journal_path(output);
     check_folder(output)?;
+    store::check_target(output)?;
     if let Some(summary) = already_done(run, output, &journal_path, options)? {
         return Ok(summary);
     }
@@ -69,7 +71,7 @@ pub fn run(
     let todo: Vec<usize> = (0..cells).filter(|cell| todo[*cell]).collect();
     let before = cells - todo.len();
     if before > 0 {
-        log::info!("going on from {before} finished cells of {cells}");
+        log::info!("{before} of {cells} cells are finished: going on from there");
     }
     let mut progress = Progress::start(bars, cells, before);
     let mut sink = |record: CellRecord| {
@@ -104,11 +106,42 @@ pub fn run(
 /// Makes a run file from a journal, finished or under way. Returns how many of how many cells.
 pub fn gather(journal: &Path, output: &Path) -> Result<(usize, usize), Failure> {
     check_folder(output)?;
+    store::check_target(output)?;
     let mut records = journal::read_only(journal)?;
     let finished = records.finished().count();
     let header = records.header().clone();
+    check_gathered(output, &header, finished)?;
     store::assemble(output, &header, &mut |cell| records.record(cell))?;
     Ok((finished, header.disk.cells.len()))
+}
+
+/// A gathered file may replace an earlier one of the same run, but never what holds more than it.
+fn check_gathered(output: &Path, header: &RunHeader, finished: usize) -> Result<(), Failure> {
+    if !output.exists() {
+        return Ok(());
+    }
+    let there = store::open(output)?;
+    let wrong = |found: String| {
+        let expected = "another --output, or no file (it is left as it is)";
+        Err(InputError::new(output, None, "output", found, expected).into())
+    };
+    if there.input_hash() != header.input_hash() {
+        return wrong(format!(
+            "a run of other inputs (`{}`)",
+            there.header().title
+        ));
+    }
+    let run = there
+        .statuses()
+        .iter()
+        .filter(|s| **s != CellStatus::Missing)
+        .count();
+    if run > finished {
+        return wrong(format!(
+            "{run} cells of this run, and {finished} in the journal"
+        ));
+    }
+    Ok(())
 }
 
 /// Whether `output` already holds this very run; an input error if it holds another.
@@ -129,12 +162,26 @@ fn already_done(
     }
     let count = |wanted| there.statuses().iter().filter(|s| **s == wanted).count();
     let failed = count(CellStatus::Failed);
-    let open = count(CellStatus::Missing) > 0 || (options.retry && failed > 0);
-    if open || (options.retry && journal.exists()) {
+    let cells = there.statuses().len();
+    if count(CellStatus::Missing) > 0 || (options.retry && failed > 0) {
         return Ok(None);
     }
-    log::info!("{} holds this run already: nothing to do", output.display());
-    let cells = there.statuses().len();
+    // A journal stays for the failed cells only. Any other was left by a kill: between the writing of
+    // the file and the removal of the journal, or after a `--fresh` that did not come to its end.
+    if journal.exists() && (failed == 0 || journal::read_only(journal)?.finished().count() < cells)
+    {
+        return Ok(None);
+    }
+    let by = &there.header().engine_version;
+    let other = if *by == run.header.engine_version {
+        String::new()
+    } else {
+        format!(" (computed by version {by}; --fresh computes it with this one)")
+    };
+    log::info!(
+        "{} holds this run already: nothing to do{other}",
+        output.display()
+    );
     Ok(Some(Summary {
         cells,
         failed,
@@ -142,30 +189,17 @@ fn already_done(
     }))
 }
 
-/// A folder that is missing or cannot be written to is said before hours of work, not after.
+/// A folder that is missing is said before hours of work, not after. Whether it can be written to
+/// shows when the journal is opened.
 fn check_folder(output: &Path) -> Result<(), Failure> {
-    let folder = match output.parent() {
-        Some(parent) if !parent.as_os_str().is_empty() => parent,
-        _ => Path::new("."),
+    let folder = directory_of(output);
+    let found = match std::fs::metadata(folder) {
+        Ok(data) if data.is_dir() => return Ok(()),
+        Ok(_) => format!("the file `{}` in the place of its folder", folder.display()),
+        Err(cause) if cause.kind() == std::io::ErrorKind::NotFound => {
+            format!("no folder `{}`", folder.display())
+        }
+        Err(cause) => format!("`{}` ({})", folder.display(), in_words(&cause)),
     };
-    let wrong = |found: String| {
-        let entry = format!("folder of {}", output.display());
-        InputError::new(
-            folder,
-            None,
-            entry,
-            found,
-            "a folder that can be written to",
-        )
-    };
-    match std::fs::metadata(folder) {
-        Ok(data) if data.is_dir() => {}
-        Ok(_) => return Err(wrong("a file".into()).into()),
-        Err(cause) => return Err(wrong(cause.to_string()).into()),
-    }
-    let probe = folder.join(format!(".frostclock-probe-{}", std::process::id()));
-    match std::fs::File::create(&probe).and_then(|_| std::fs::remove_file(&probe)) {
-        Ok(()) => Ok(()),
-        Err(cause) => Err(wrong(cause.to_string()).into()),
-    }
+    Err(InputError::new(output, None, "output", found, "a folder that exists").into())
 }

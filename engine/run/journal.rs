@@ -16,7 +16,7 @@ use super::frame::{FRAME, fill, push_frame, read_frame};
 use super::record::{CellRecord, CellStatus};
 use super::same_run::differences;
 use crate::errors::{Failure, InputError};
-use crate::store::durable::sync_directory_of;
+use crate::store::durable::{not_created, sync_directory_of};
 use crate::store::header::RunHeader;
 
 /// The first bytes of a journal.
@@ -243,7 +243,7 @@ fn open_locked(path: &Path) -> Result<File, Failure> {
             .create(true)
             .truncate(false)
             .open(path)
-            .map_err(|cause| Failure::machine("opening the journal", path, cause))?;
+            .map_err(|cause| not_created(path, "journal", "opening the journal", cause))?;
         match file.try_lock_exclusive() {
             Ok(true) => {}
             Ok(false) => {

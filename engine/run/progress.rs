@@ -79,7 +79,9 @@ impl Progress {
         self.bar.inc(1);
         let done = self.tally.before + self.tally.now;
         let share = LINES_PER_RUN * done / self.tally.total.max(1);
+        // The last line is `finish`'s.
         if !self.on_terminal
+            && done < self.tally.total
             && (share > self.last_share || self.last_line.elapsed() >= BETWEEN_LINES)
         {
             log::info!("{}", self.tally.line(self.tally.started.elapsed()));

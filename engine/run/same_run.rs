@@ -5,7 +5,8 @@
 use std::path::Path;
 
 use crate::errors::InputError;
-use crate::store::header::RunHeader;
+use crate::store::header::{CELL_NUMBERS, RunHeader, cell_numbers};
+use crate::units::number_text;
 
 /// How many differing lines of a case are shown.
 const LINES_SHOWN: usize = 3;
@@ -55,11 +56,12 @@ pub(super) fn differences(path: &Path, then: &RunHeader, now: &RunHeader) -> Vec
             Some(cell) => format!("conditions of cell {cell}"),
             None => "cells of the disk".to_string(),
         };
-        let counted = |header: &RunHeader| match cell {
-            Some(cell) => conditions_in_words(header, cell),
-            None => format!("{} cells", header.disk.cells.len()),
+        let counted = |header: &RunHeader| format!("{} cells", header.disk.cells.len());
+        let (then, now) = match cell {
+            Some(cell) => differing_conditions(then, now, cell),
+            None => (counted(then), counted(now)),
         };
-        found.push(differs(what, &counted(then), &counted(now)));
+        found.push(differs(what, &then, &now));
     }
     // The same inputs expanded otherwise: only an engine changed without a new version does that.
     let axes = |header: &RunHeader| {
@@ -100,12 +102,40 @@ fn differing_lines<'a>(
         .take(LINES_SHOWN)
 }
 
-fn conditions_in_words(header: &RunHeader, cell: usize) -> String {
+/// The conditions of a cell by the names of their columns.
+fn conditions(header: &RunHeader, cell: usize) -> Vec<(String, f64)> {
     let Some(cell) = header.disk.cells.get(cell) else {
-        return "none".to_string();
+        return Vec::new();
     };
-    format!(
-        "{} au, {} au, n_H {} cm^-3, T_gas {} K, T_dust {} K, {:?}",
-        cell.radius, cell.height, cell.n_h, cell.t_gas, cell.t_dust, cell.light
-    )
+    let plain = CELL_NUMBERS.iter().zip(cell_numbers(cell));
+    let mut all: Vec<_> = plain
+        .map(|((name, unit, _), value)| (format!("{name} [{unit}]"), value))
+        .collect();
+    for (field, light) in header.disk.fields.iter().zip(&cell.light) {
+        let field = &field.name;
+        all.push((format!("UV_{field} [Draine]"), light.strength));
+        all.push((format!("AV_{field} [mag]"), light.extinction));
+        for (s, species) in header.disk.column_species.iter().enumerate() {
+            all.push((format!("N_{species}_{field} [cm-2]"), light.columns[s]));
+            // NaN stands for "not given", here as in the run file.
+            let shield = light.shields[s].unwrap_or(f64::NAN);
+            all.push((format!("shield_{species}_{field} [1]"), shield));
+        }
+    }
+    all
+}
+
+/// Those conditions of a cell that differ, as each of the two has them.
+fn differing_conditions(then: &RunHeader, now: &RunHeader, cell: usize) -> (String, String) {
+    let (then, now) = (conditions(then, cell), conditions(now, cell));
+    let pairs = then
+        .iter()
+        .zip(&now)
+        .filter(|(t, n)| t.0 != n.0 || t.1.to_bits() != n.1.to_bits());
+    let word = |(name, value): &(String, f64)| format!("{name} {}", number_text(*value));
+    let (then, now): (Vec<_>, Vec<_>) = pairs
+        .take(LINES_SHOWN)
+        .map(|(t, n)| (word(t), word(n)))
+        .unzip();
+    (then.join(", "), now.join(", "))
 }

@@ -8,7 +8,7 @@ use std::path::Path;
 use hdf5::File;
 use hdf5::file::LibraryVersion;
 
-use super::durable::{PartFile, require_space};
+use super::durable::{PartFile, remove_leftovers, require_space};
 use super::header::{CELL_NUMBERS, RunHeader};
 use super::layout::Writer;
 use super::put::{Kept, fingerprint};
@@ -53,7 +53,9 @@ pub fn assemble(path: &Path, header: &RunHeader, source: &mut RecordSource) -> R
     verify(part.path(), &kept, &blocks, shape).map_err(|cause| {
         Failure::machine("checking the finished run file (disk full?)", path, cause)
     })?;
-    part.publish()
+    part.publish()?;
+    remove_leftovers(path);
+    Ok(())
 }
 
 /// Upper bound of the size, bytes: nothing compressed, every per-cell number counted.
@@ -79,19 +81,21 @@ fn check_names(path: &Path, header: &RunHeader) -> Result<(), Failure> {
     }
 }
 
-/// Only a run of ours may be replaced.
-fn check_target(path: &Path) -> Result<(), Failure> {
+/// Only a run of ours may be replaced. Asked again when the file is written: for callers that want
+/// to know before hours of work.
+pub fn check_target(path: &Path) -> Result<(), Failure> {
     match read::is_run(path) {
         Ok(()) => Ok(()),
         Err(_) if !path.exists() => Ok(()),
-        Err(Failure::Input(_)) => Err(InputError::new(
-            path,
-            None,
-            "output",
-            "a file that is no run of frostclock",
-            "a run to replace, or no file (it is left as it is)",
-        )
-        .into()),
+        Err(Failure::Input(_)) => {
+            let found = if path.is_dir() {
+                "a folder"
+            } else {
+                "a file that is no run of frostclock"
+            };
+            let expected = "a run to replace, or no file (it is left as it is)";
+            Err(InputError::new(path, None, "output", found, expected).into())
+        }
         Err(failure) => Err(failure),
     }
 }

@@ -8,7 +8,9 @@ use std::fs::{File, OpenOptions};
 use std::io;
 use std::path::{Path, PathBuf};
 
-use crate::errors::Failure;
+use fs4::fs_std::FileExt;
+
+use crate::errors::{Failure, InputError, in_words};
 
 /// The directory a file stands in (`.` for a bare name).
 pub fn directory_of(path: &Path) -> &Path {
@@ -40,6 +42,67 @@ pub fn require_space(path: &Path, needed: u64) -> Result<(), Failure> {
     Ok(())
 }
 
+/// The failure of a creation at `path`, which `entry` of the input names: a place where nothing may
+/// be written is the user's mistake, anything else the machine's.
+pub fn not_created(path: &Path, entry: &str, doing: &str, cause: io::Error) -> Failure {
+    use io::ErrorKind::{
+        IsADirectory, NotADirectory, NotFound, PermissionDenied, ReadOnlyFilesystem,
+    };
+    let expected = "a place that can be written to";
+    match cause.kind() {
+        IsADirectory => {
+            let expected = format!("a {entry}, or no file");
+            InputError::new(path, None, entry, "a folder", expected).into()
+        }
+        NotFound | NotADirectory | PermissionDenied | ReadOnlyFilesystem => {
+            let folder = directory_of(path).display();
+            let found = format!("`{folder}` ({})", in_words(&cause));
+            InputError::new(path, None, entry, found, expected).into()
+        }
+        _ => Failure::machine(doing, path, cause),
+    }
+}
+
+/// What follows the target's name in that of its part files.
+const PART: &str = ".part-";
+
+/// Removes the part files that killed processes left beside `target`. Never one in use: HDF5 locks
+/// what it has open, and whoever loses its file otherwise can only say so, for `target` is written.
+pub fn remove_leftovers(target: &Path) {
+    let Some(name) = target.file_name() else {
+        return;
+    };
+    let start = format!("{}{PART}", name.to_string_lossy());
+    let Ok(entries) = std::fs::read_dir(directory_of(target)) else {
+        return;
+    };
+    for entry in entries.flatten() {
+        let rest = entry
+            .file_name()
+            .to_string_lossy()
+            .strip_prefix(&start)
+            .map(str::to_string);
+        // `<process>-<number>` and nothing else.
+        let ours = rest
+            .as_deref()
+            .and_then(|rest| rest.split_once('-'))
+            .is_some_and(|(process, number)| {
+                process.parse::<u32>().is_ok() && number.parse::<u32>().is_ok()
+            });
+        let part = entry.path();
+        let idle = || {
+            let locked = File::open(&part).map(|file| file.try_lock_exclusive());
+            matches!(locked, Ok(Ok(true)))
+        };
+        if ours && idle() {
+            match std::fs::remove_file(&part) {
+                Ok(()) => log::info!("removed {}, left by a run that was killed", part.display()),
+                Err(cause) => log::warn!("{}: could not be removed: {cause}", part.display()),
+            }
+        }
+    }
+}
+
 /// A temporary file beside its target. Dropped before [`PartFile::publish`], it is removed.
 #[derive(Debug)]
 pub struct PartFile {
@@ -58,7 +121,7 @@ impl PartFile {
         let mut number = 0;
         loop {
             let mut name = OsString::from(target.as_os_str());
-            name.push(format!(".part-{}-{number}", std::process::id()));
+            name.push(format!("{PART}{}-{number}", std::process::id()));
             let part = PathBuf::from(name);
             match OpenOptions::new().write(true).create_new(true).open(&part) {
                 Ok(handle) => {
@@ -71,7 +134,7 @@ impl PartFile {
                     });
                 }
                 Err(cause) if cause.kind() == io::ErrorKind::AlreadyExists => number += 1,
-                Err(cause) => return Err(Failure::machine("creating it", &part, cause)),
+                Err(cause) => return Err(not_created(target, "output", "creating it", cause)),
             }
         }
     }

@@ -21,7 +21,7 @@ mod scales;
 use crate::errors::Failure;
 use crate::run::record::CellRecord;
 
-pub use assemble::assemble;
+pub use assemble::{assemble, check_target};
 pub use header::{RunHeader, SpeciesInfo, Tolerances};
 pub use read::{RunFile, open};
 

@@ -79,6 +79,9 @@ fn open_run(path: &Path) -> Result<File, Failure> {
             return Err(wrong("no such file", "a run file of frostclock"));
         }
         Err(cause) if cause.kind() == io::ErrorKind::UnexpectedEof => {}
+        Err(cause) if cause.kind() == io::ErrorKind::IsADirectory => {
+            return Err(wrong("a folder", "a run file of frostclock"));
+        }
         Err(cause) => return Err(Failure::machine("opening the run file", path, cause)),
     }
     if &start == journal::MAGIC {
@@ -88,7 +91,7 @@ fn open_run(path: &Path) -> Result<File, Failure> {
         ));
     }
     if &start != b"\x89HDF\r\n\x1a\n" {
-        return Err(wrong("no HDF5 file", "a run file of frostclock"));
+        return Err(wrong("a file that is not HDF5", "a run file of frostclock"));
     }
     let opened = File::with_options()
         .with_fapl(|plist| plist.chunk_cache(CACHE_SLOTS, CACHE_BYTES, 0.75))

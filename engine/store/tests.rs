@@ -202,7 +202,7 @@ fn what_is_no_run_is_refused_with_what_it_is() {
     };
     refused("absent.h5", "no such file");
     fs::write(folder.path().join("a.txt"), "hello").expect("writes");
-    refused("a.txt", "no HDF5 file");
+    refused("a.txt", "a file that is not HDF5");
     let journal = folder.path().join("a.journal");
     Journal::open_or_create(&journal, &header(2), false).expect("creates");
     refused("a.journal", "`gather`");
