@@ -103,11 +103,7 @@ mod tests {
             ), // C+ + H2O
         ];
         for (alpha, dipole, mu, at_10, at_300) in cases {
-<<<<<<< HEAD
-            let langevin = 2.342e-9 * f64::sqrt(alpha / mu);
-=======
             let langevin = 2.342e-9 * (alpha / mu).sqrt();
->>>>>>> main
             let x =
                 dipole * 1e-18 / (2.0 * alpha * 1e-24 * crate::units::BOLTZMANN * 300.0f64).sqrt();
             for (t, expected) in [(10.0, at_10), (300.0, at_300)] {

@@ -110,15 +110,9 @@ fn surface(line: &SurfaceLine, place: &str, findings: &mut Findings) {
 /// The channels of one pair that share a barrier cannot take more than every attempt. (Channels of
 /// different barriers compete by how often they cross them.)
 fn pair_shares(file: &NetworkFile, entries: &[Entry], findings: &mut Findings) {
-<<<<<<< HEAD
-    /// Reactants and barrier (its bits) of channels that share the attempts.
-    type Pair = (Vec<usize>, u64);
-    let mut pairs: BTreeMap<Pair, (f64, Vec<&Entry>)> = BTreeMap::new();
-=======
     // By reactants and height of the barrier: sum of the shares, and the lines that make it.
     type Channels<'a> = (f64, Vec<&'a Entry>);
     let mut pairs: BTreeMap<(Vec<usize>, u64), Channels> = BTreeMap::new();
->>>>>>> main
     for entry in entries.iter().filter(|entry| entry.group == Group::Surface) {
         let line = &file.surface[entry.index];
         let key = (entry.reactant_set(), line.barrier.to_bits());
