@@ -14,6 +14,9 @@ use crate::store::{RunHeader, SpeciesInfo, Tolerances};
 use crate::units::YEAR;
 use std::path::{Path, PathBuf};
 
+/// The engine's version and the build it is: a journal is continued by the same code only.
+pub const ENGINE_VERSION: &str = concat!(env!("CARGO_PKG_VERSION"), "+", env!("FROSTCLOCK_BUILD"));
+
 /// A case made ready to run. Shared by all threads.
 #[derive(Debug)]
 pub struct Prepared {
@@ -57,7 +60,7 @@ impl Prepared {
         notes.extend(crate::case::start_notes(&chemistry, &starts[0]));
         let header = RunHeader {
             title: case.title.clone(),
-            engine_version: env!("CARGO_PKG_VERSION").to_string(),
+            engine_version: ENGINE_VERSION.to_string(),
             kernel: kernel_name(),
             case_text: case.resolved.clone(),
             network_text: case.network_text.clone(),
