@@ -209,7 +209,7 @@ impl Mechanism {
         for &Merge { into, from, sign } in &self.flux_plan.merges {
             fluxes[into as usize] += sign * fluxes[from as usize];
         }
-        self.flux_plan.sums.evaluate(&fluxes, dy);
+        self.flux_plan.sums.evaluate_exactly(&fluxes, dy);
         scratch.fluxes = fluxes;
     }
 }

@@ -1,0 +1,114 @@
+//! Owns the static plan of the factorisation: where every entry of the matrix and of its factors
+//! stands, once per network.
+//!
+//! It never holds values: see `factors`.
+
+use super::order::eliminate;
+
+/// The pattern of a matrix with its order of elimination and the lists the numerical work runs
+/// through. Places are positions in that order.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Pattern {
+    /// The pattern as given, in compressed columns.
+    pub(super) col_ptr: Vec<usize>,
+    pub(super) row_idx: Vec<usize>,
+    /// The row (and column) of the matrix at each place.
+    pub(super) order: Vec<u32>,
+    /// End of each place's entries in `entries`; they begin where those of the place before end.
+    pub(super) entry_ends: Vec<u32>,
+    /// Entries of the matrix by rows: (index into the values, place of the column).
+    pub(super) entries: Vec<(u32, u32)>,
+    /// Bounds of each place's row of L (then those of U) in `columns`: L, U, next row.
+    pub(super) rows: Vec<Row>,
+    /// Places of the columns of L and U, row by row: L left of the diagonal, then U right of it.
+    pub(super) columns: Vec<u32>,
+}
+
+/// One row of the factors in [`Pattern::columns`].
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) struct Row {
+    pub start: u32,
+    /// One past the last entry of L; those of U follow.
+    pub lower_end: u32,
+    pub end: u32,
+}
+
+impl Row {
+    pub fn lower(self) -> std::ops::Range<usize> {
+        self.start as usize..self.lower_end as usize
+    }
+
+    pub fn upper(self) -> std::ops::Range<usize> {
+        self.lower_end as usize..self.end as usize
+    }
+}
+
+impl Pattern {
+    /// Orders the square pattern given in compressed columns (`row_idx[col_ptr[j]..col_ptr[j + 1]]`
+    /// are the rows of column j). The diagonal is taken as full whether it is listed or not.
+    pub fn new(col_ptr: &[usize], row_idx: &[usize]) -> Pattern {
+        let count = col_ptr.len().saturating_sub(1);
+        let elimination = eliminate(count, col_ptr, row_idx);
+        let mut place = vec![0; count];
+        for (at, &row) in elimination.order.iter().enumerate() {
+            place[row] = at;
+        }
+        let mut by_row = vec![Vec::new(); count];
+        for (column, bounds) in col_ptr.windows(2).enumerate() {
+            for index in bounds[0]..bounds[1] {
+                by_row[place[row_idx[index]]].push((index as u32, place[column] as u32));
+            }
+        }
+        let (mut entries, mut entry_ends) = (Vec::with_capacity(row_idx.len()), Vec::new());
+        for row in by_row {
+            entries.extend(row);
+            entry_ends.push(entries.len() as u32);
+        }
+        let (mut columns, mut rows) = (Vec::new(), Vec::with_capacity(count));
+        for (lower, upper) in elimination.lower.iter().zip(&elimination.upper) {
+            let start = columns.len() as u32;
+            columns.extend(lower.iter().map(|&column| column as u32));
+            let lower_end = columns.len() as u32;
+            columns.extend(upper.iter().map(|&column| column as u32));
+            rows.push(Row {
+                start,
+                lower_end,
+                end: columns.len() as u32,
+            });
+        }
+        Pattern {
+            col_ptr: col_ptr.to_vec(),
+            row_idx: row_idx.to_vec(),
+            order: elimination.order.iter().map(|&row| row as u32).collect(),
+            entry_ends,
+            entries,
+            rows,
+            columns,
+        }
+    }
+
+    /// The number of rows.
+    pub fn count(&self) -> usize {
+        self.order.len()
+    }
+
+    /// Whether this is the plan of the pattern given.
+    pub fn fits(&self, col_ptr: &[usize], row_idx: &[usize]) -> bool {
+        self.col_ptr == col_ptr && self.row_idx == row_idx
+    }
+
+    /// The number of entries of both factors with the diagonal.
+    pub fn filled(&self) -> usize {
+        self.columns.len() + self.count()
+    }
+
+    /// The number of multiply-subtracts of one factorisation.
+    pub fn multiplications(&self) -> usize {
+        let upper = |row: &Row| row.upper().len();
+        let of = |row: &Row| -> usize {
+            let lower = &self.columns[row.lower()];
+            lower.iter().map(|&k| upper(&self.rows[k as usize])).sum()
+        };
+        self.rows.iter().map(of).sum()
+    }
+}
