@@ -48,7 +48,11 @@ impl fmt::Display for InputError {
             }
             write!(f, ": ")?;
         }
-        write!(f, "{}: found {}, expected {}", self.entry, self.found, self.expected)
+        write!(
+            f,
+            "{}: found {}, expected {}",
+            self.entry, self.found, self.expected
+        )
     }
 }
 
@@ -83,7 +87,11 @@ impl Failure {
 
     /// A machine failure while `doing` something with `path`.
     pub fn machine(doing: impl Into<String>, path: &Path, cause: impl fmt::Display) -> Self {
-        Failure::Machine { doing: doing.into(), path: path.to_path_buf(), cause: cause.to_string() }
+        Failure::Machine {
+            doing: doing.into(),
+            path: path.to_path_buf(),
+            cause: cause.to_string(),
+        }
     }
 }
 

@@ -80,7 +80,11 @@ pub fn at(times: &[f64], values: &[f64], floor: f64, t: f64) -> Option<f64> {
         return Some(x0 + (x1 - x0) * (t / t0).ln() / (t1 / t0).ln());
     }
     let first = if i > 0 && usable(i - 1) { i - 1 } else { i };
-    let last = if i + 2 < times.len() && usable(i + 2) { i + 2 } else { i + 1 };
+    let last = if i + 2 < times.len() && usable(i + 2) {
+        i + 2
+    } else {
+        i + 1
+    };
     let x: Vec<f64> = times[first..=last].iter().map(|t| t.ln()).collect();
     let y: Vec<f64> = values[first..=last].iter().map(|v| v.ln()).collect();
     let m = slopes(&x, &y);
@@ -118,9 +122,14 @@ mod tests {
         for k in 0..1600 {
             let t = k as f64 / 100.0;
             let x = at(&times, &values, 1e-25, t).unwrap();
-            let Some(Place::After(i)) = place(&times, t) else { continue };
+            let Some(Place::After(i)) = place(&times, t) else {
+                continue;
+            };
             let (low, high) = (values[i].min(values[i + 1]), values[i].max(values[i + 1]));
-            assert!(x >= low * (1.0 - 1e-12) && x <= high * (1.0 + 1e-12), "{x} at {t}");
+            assert!(
+                x >= low * (1.0 - 1e-12) && x <= high * (1.0 + 1e-12),
+                "{x} at {t}"
+            );
         }
     }
 
@@ -129,7 +138,10 @@ mod tests {
     fn zero_time_floor_missing_and_outside() {
         let times = [0.0, 1.0, 10.0];
         assert_eq!(at(&times, &[0.0, 4.0, 4.0], 1e-25, 0.25), Some(1.0));
-        assert_eq!(at(&times, &[0.0, -1e-30, 1.0], 1e-25, 10f64.sqrt()), Some(0.5 - 0.5e-30));
+        assert_eq!(
+            at(&times, &[0.0, -1e-30, 1.0], 1e-25, 10f64.sqrt()),
+            Some(0.5 - 0.5e-30)
+        );
         assert_eq!(at(&times, &[1.0, 1.0, f64::NAN], 1e-25, 5.0), None);
         assert_eq!(at(&times, &[1.0, 1.0, 1.0], 1e-25, 10.1), None);
         assert_eq!(at(&times, &[1.0, 2.0, 3.0], 1e-25, 10.0), Some(3.0));

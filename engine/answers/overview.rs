@@ -16,29 +16,52 @@ pub fn overview(run: &RunFile) -> Result<Vec<Line>, Failure> {
     let mut lines: Vec<Line> = Vec::new();
     let mut say = |label: &str, text: String| lines.push((label.to_string(), text));
     say("run", header.title.clone());
-    say("made by", format!("frostclock {} ({})", header.engine_version, header.kernel));
+    say(
+        "made by",
+        format!("frostclock {} ({})", header.engine_version, header.kernel),
+    );
     say("inputs", format!("sha256 {}", run.input_hash()));
     let count = |wanted| run.statuses().iter().filter(|s| **s == wanted).count();
     let (done, failed) = (count(CellStatus::Done), count(CellStatus::Failed));
     say(
         "cells",
-        format!("{} ({done} done, {failed} failed, {} not run)", run.statuses().len(), count(CellStatus::Missing)),
+        format!(
+            "{} ({done} done, {failed} failed, {} not run)",
+            run.statuses().len(),
+            count(CellStatus::Missing)
+        ),
     );
     let phase = |p| header.species.iter().filter(|s| s.phase == p).count();
     say(
         "species",
-        format!("{} gas, {} adsorbed, {} grain charges", phase(Phase::Gas), phase(Phase::Ice), phase(Phase::Dust)),
+        format!(
+            "{} gas, {} adsorbed, {} grain charges",
+            phase(Phase::Gas),
+            phase(Phase::Ice),
+            phase(Phase::Dust)
+        ),
     );
     let times = &header.times_yr;
     if let (Some(first), Some(last)) = (times.get(1), times.last()) {
-        say("snapshots", format!("{}: 0, {first} yr ... {last:e} yr", times.len()));
+        say(
+            "snapshots",
+            format!("{}: 0, {first} yr ... {last:e} yr", times.len()),
+        );
     }
     let t = header.tolerances;
-    say("accuracy", format!("relative {:e}, smallest abundance {:e}", t.relative, t.smallest));
+    say(
+        "accuracy",
+        format!(
+            "relative {:e}, smallest abundance {:e}",
+            t.relative, t.smallest
+        ),
+    );
     say("", String::new());
     for (label, unit, pick) in ranges() {
         let values = header.disk.cells.iter().map(pick);
-        let (low, high) = values.fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), v| (l.min(v), h.max(v)));
+        let (low, high) = values.fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), v| {
+            (l.min(v), h.max(v))
+        });
         say(label, format!("{low:.4e} ... {high:.4e} {unit}"));
     }
     for (f, kind) in header.disk.fields.iter().enumerate() {
@@ -46,7 +69,10 @@ pub fn overview(run: &RunFile) -> Result<Vec<Line>, Failure> {
         let (low, high) = light.fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), v| {
             (l.min(v.extinction), h.max(v.extinction))
         });
-        say(&format!("A_V of `{}`", kind.name), format!("{low:.3e} ... {high:.3e} mag ({})", kind.spectrum));
+        say(
+            &format!("A_V of `{}`", kind.name),
+            format!("{low:.3e} ... {high:.3e} mag ({})", kind.spectrum),
+        );
     }
     say("", String::new());
     for (label, text) in closures(run)? {
@@ -54,7 +80,11 @@ pub fn overview(run: &RunFile) -> Result<Vec<Line>, Failure> {
     }
     let work = run.work()?;
     let sum = |pick: fn(&crate::run::record::Work) -> u64| work.iter().map(pick).sum::<u64>();
-    let seconds: f64 = work.iter().map(|w| w.seconds).filter(|s| s.is_finite()).sum();
+    let seconds: f64 = work
+        .iter()
+        .map(|w| w.seconds)
+        .filter(|s| s.is_finite())
+        .sum();
     say(
         "work",
         format!(
@@ -69,7 +99,10 @@ pub fn overview(run: &RunFile) -> Result<Vec<Line>, Failure> {
         let counts = cautions.iter().filter_map(|c| c.get(i).copied());
         let (cells, most) = counts.fold((0, 0), |(n, m), c| (n + u32::from(c > 0), m.max(c)));
         if cells > 0 {
-            say("caution", format!("{name}: in {cells} cells, up to {most} in one"));
+            say(
+                "caution",
+                format!("{name}: in {cells} cells, up to {most} in one"),
+            );
         }
     }
     Ok(lines)
@@ -84,7 +117,9 @@ fn ranges() -> [(&'static str, &'static str, Pick); 6] {
         ("n_H", "cm^-3", |c| c.n_h),
         ("T_gas", "K", |c| c.t_gas),
         ("T_dust", "K", |c| c.t_dust),
-        ("zeta (all)", "s^-1", |c| c.zeta_cosmic + c.zeta_xray + c.zeta_nuclides),
+        ("zeta (all)", "s^-1", |c| {
+            c.zeta_cosmic + c.zeta_xray + c.zeta_nuclides
+        }),
     ]
 }
 
@@ -99,9 +134,18 @@ fn closures(run: &RunFile) -> Result<Vec<(&'static str, String)>, Failure> {
     }
     let [elements, charge, dust, ice] = worst;
     Ok(vec![
-        ("elements", format!("kept to {elements:.1e} of each total at worst")),
-        ("charge", format!("kept to {charge:.1e} of the sum of all charges at worst")),
-        ("grains", format!("kept to {dust:.1e}; ice total matches its parts to {ice:.1e}")),
+        (
+            "elements",
+            format!("kept to {elements:.1e} of each total at worst"),
+        ),
+        (
+            "charge",
+            format!("kept to {charge:.1e} of the sum of all charges at worst"),
+        ),
+        (
+            "grains",
+            format!("kept to {dust:.1e}; ice total matches its parts to {ice:.1e}"),
+        ),
     ])
 }
 

@@ -22,9 +22,16 @@ pub fn species(header: &RunHeader, list: &str) -> Result<Vec<usize>, InputError>
     let wrong = |found: String, expected: String| {
         InputError::new(Path::new(""), None, "--species", found, expected)
     };
-    let names: Vec<&str> = list.split(',').map(str::trim).filter(|n| !n.is_empty()).collect();
+    let names: Vec<&str> = list
+        .split(',')
+        .map(str::trim)
+        .filter(|n| !n.is_empty())
+        .collect();
     if names.is_empty() {
-        return Err(wrong("an empty list".into(), "names separated by commas".into()));
+        return Err(wrong(
+            "an empty list".into(),
+            "names separated by commas".into(),
+        ));
     }
     names
         .into_iter()

@@ -254,19 +254,30 @@ pub fn element_totals(chemistry: &Chemistry, state: &[f64]) -> Vec<(String, f64)
     totals
 }
 
-/// What is odd about a start though it can be run: abundances are per hydrogen nucleus, so that
-/// hydrogen has to add up to about 1. An abundance relative to H2 by mistake shows here.
+/// What a start adds up to, for a person to check: every element and the charge per hydrogen
+/// nucleus; and what is odd though it can be run: hydrogen has to add up to about 1. An abundance
+/// relative to H2 by mistake shows here.
 pub fn start_notes(chemistry: &Chemistry, state: &[f64]) -> Vec<String> {
     let totals = element_totals(chemistry, state);
-    let Some((_, hydrogen)) = totals.iter().find(|(element, _)| element == "H") else {
-        return Vec::new();
-    };
-    if (hydrogen - 1.0).abs() <= 0.01 {
-        return Vec::new();
+    let listed: Vec<String> = totals
+        .iter()
+        .filter(|(element, _)| element != "dust")
+        .map(|(element, total)| format!("{element} {total:.4e}"))
+        .collect();
+    let species = chemistry.species.iter().zip(state);
+    let charge: f64 = species.map(|(s, x)| f64::from(s.charge) * x).sum();
+    let mut notes = vec![format!(
+        "start: per hydrogen nucleus {}; charge {charge:.1e}",
+        listed.join(", ")
+    )];
+    match totals.iter().find(|(element, _)| element == "H") {
+        Some((_, hydrogen)) if (hydrogen - 1.0).abs() > 0.01 => notes.push(format!(
+            "start: the hydrogen in all species adds up to {hydrogen:.4} per hydrogen nucleus \
+             instead of 1"
+        )),
+        _ => {}
     }
-    vec![format!(
-        "start: the hydrogen in all species adds up to {hydrogen:.4} per hydrogen nucleus instead of 1"
-    )]
+    notes
 }
 
 #[cfg(test)]
@@ -344,10 +355,11 @@ mod tests {
             element_totals(&chemistry, &state).into_iter().collect();
         assert!((totals["H"] - 1.000_001).abs() < 1e-12);
         assert!((totals["C"] - 1.3e-4).abs() < 1e-15 && (totals["O"] - 1.3e-4).abs() < 1e-15);
-        assert!(start_notes(&chemistry, &state).is_empty());
+        let notes = start_notes(&chemistry, &state);
+        assert!(notes.len() == 1 && notes[0].contains("H 1.0000e0"), "{notes:?}");
         // Per H2 instead of per H nucleus: the slip the note is for.
         let twice = start_state(&choice(&[("H2", 1.0)]), &[], &chemistry, 1.8e-12).unwrap();
-        assert_eq!(start_notes(&chemistry, &twice).len(), 1);
+        assert_eq!(start_notes(&chemistry, &twice).len(), 2);
     }
 
     /// A composition of the network must give the same as its abundances written out.

@@ -54,7 +54,11 @@ pub fn at(arguments: &Arguments) -> Result<Outcome, Failure> {
             times[i + 1]
         ),
     }
-    let wanted = arguments.species.as_deref().map(|l| select::species(run.header(), l)).transpose()?;
+    let wanted = arguments
+        .species
+        .as_deref()
+        .map(|l| select::species(run.header(), l))
+        .transpose()?;
     match &arguments.near {
         Some(near) => one_cell(&run, find_cell(&run, near)?, time, wanted, arguments)?,
         None => all_cells(&run, time, wanted, arguments)?,
@@ -91,7 +95,8 @@ fn one_cell(
     let mut full = Table::new(["species", "abundance per H"]);
     let listed = wanted.clone().unwrap_or_else(|| (0..x.len()).collect());
     for id in &listed {
-        full.rows.push(vec![header.species[*id].name.clone(), exact(x[*id])]);
+        full.rows
+            .push(vec![header.species[*id].name.clone(), exact(x[*id])]);
     }
     let shown = wanted.unwrap_or_else(|| {
         let mut order = listed;
@@ -102,8 +107,14 @@ fn one_cell(
     let mut table = Table::new(["species", "abundance per H", "density [cm^-3]"]);
     let (n_h, floor) = (header.disk.cells[cell].n_h, header.tolerances.smallest);
     for id in shown {
-        let density = x[id].filter(|v| *v > floor).map_or("-".into(), |v| format!("{:.3e}", v * n_h));
-        table.rows.push(vec![header.species[id].name.clone(), abundance(x[id], floor), density]);
+        let density = x[id]
+            .filter(|v| *v > floor)
+            .map_or("-".into(), |v| format!("{:.3e}", v * n_h));
+        table.rows.push(vec![
+            header.species[id].name.clone(),
+            abundance(x[id], floor),
+            density,
+        ]);
     }
     table.print()?;
     arguments.csv.as_ref().map_or(Ok(()), |path| full.csv(path))
@@ -121,7 +132,9 @@ fn all_cells(
     for cell in 0..cells.len() {
         states.push(composition(run, cell, time)?);
     }
-    let shown = wanted.clone().unwrap_or_else(|| main_carriers(run, &states));
+    let shown = wanted
+        .clone()
+        .unwrap_or_else(|| main_carriers(run, &states));
     let listed = wanted.unwrap_or_else(|| (0..header.species.len()).collect());
     let heads = |ids: &[usize]| {
         let names = ids.iter().map(|id| header.species[*id].name.clone());
@@ -131,14 +144,30 @@ fn all_cells(
     let (mut table, mut full) = (Table::new(heads(&shown)), Table::new(heads(&listed)));
     for (cell, (c, x)) in cells.iter().zip(&states).enumerate() {
         let status = run.statuses()[cell].word().to_string();
-        let short = [cell.to_string(), format!("{:.3}", c.radius), format!("{:.3}", c.height)];
-        let long = [cell.to_string(), format!("{:e}", c.radius), format!("{:e}", c.height)];
+        let short = [
+            cell.to_string(),
+            format!("{:.3}", c.radius),
+            format!("{:.3}", c.height),
+        ];
+        let long = [
+            cell.to_string(),
+            format!("{:e}", c.radius),
+            format!("{:e}", c.height),
+        ];
         let floor = header.tolerances.smallest;
         let row = |first: [String; 3], rest: Vec<String>| {
-            first.into_iter().chain([status.clone()]).chain(rest).collect()
+            first
+                .into_iter()
+                .chain([status.clone()])
+                .chain(rest)
+                .collect()
         };
-        table.rows.push(row(short, shown.iter().map(|id| abundance(x[*id], floor)).collect()));
-        full.rows.push(row(long, listed.iter().map(|id| exact(x[*id])).collect()));
+        table.rows.push(row(
+            short,
+            shown.iter().map(|id| abundance(x[*id], floor)).collect(),
+        ));
+        full.rows
+            .push(row(long, listed.iter().map(|id| exact(x[*id])).collect()));
     }
     table.print()?;
     arguments.csv.as_ref().map_or(Ok(()), |path| full.csv(path))
@@ -151,7 +180,9 @@ fn main_carriers(run: &RunFile, states: &[Vec<Option<f64>>]) -> Vec<usize> {
     let carries = |id: &usize| {
         let s = &species[*id];
         matches!(s.phase, Phase::Gas | Phase::Ice)
-            && s.atoms.iter().any(|(element, _)| element != "H" && element != "He")
+            && s.atoms
+                .iter()
+                .any(|(element, _)| element != "H" && element != "He")
     };
     let mut ids: Vec<usize> = (0..species.len()).filter(carries).collect();
     ids.sort_by(|a, b| total(*b).total_cmp(&total(*a)));

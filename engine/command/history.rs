@@ -32,16 +32,22 @@ pub fn history(arguments: &Arguments) -> Result<Outcome, Failure> {
         columns.push(run.history(cell, *id)?);
     }
     let names = species.iter().map(|id| header.species[*id].name.clone());
-    let heads: Vec<String> = std::iter::once("time [yr]".to_string()).chain(names).collect();
+    let heads: Vec<String> = std::iter::once("time [yr]".to_string())
+        .chain(names)
+        .collect();
     let (mut shown, mut full) = (Table::new(heads.clone()), Table::new(heads));
     for (i, time) in header.times_yr.iter().enumerate() {
         // NaN is how the file says "not reached".
         let value = |c: &Vec<f64>| Some(c[i]).filter(|x| !x.is_nan());
         let floor = header.tolerances.smallest;
         let row = |first: String, form: &dyn Fn(Option<f64>) -> String| {
-            std::iter::once(first).chain(columns.iter().map(|c| form(value(c)))).collect()
+            std::iter::once(first)
+                .chain(columns.iter().map(|c| form(value(c))))
+                .collect()
         };
-        shown.rows.push(row(format!("{time:.4e}"), &|x| abundance(x, floor)));
+        shown
+            .rows
+            .push(row(format!("{time:.4e}"), &|x| abundance(x, floor)));
         full.rows.push(row(format!("{time:e}"), &exact));
     }
     shown.print()?;

@@ -51,10 +51,17 @@ pub fn look(arguments: &Arguments) -> Result<Outcome, Failure> {
     let failed = overview::failed(&run);
     for (cell, when, why) in failed.iter().take(FAILED_SHOWN) {
         let years = when / crate::units::YEAR;
-        print::out(&format!("{:<12} cell {cell} at {years:.3e} yr: {why}", "failed"))?;
+        print::out(&format!(
+            "{:<12} cell {cell} at {years:.3e} yr: {why}",
+            "failed"
+        ))?;
     }
     if failed.len() > FAILED_SHOWN {
-        print::out(&format!("{:<12} and {} more", "failed", failed.len() - FAILED_SHOWN))?;
+        print::out(&format!(
+            "{:<12} and {} more",
+            "failed",
+            failed.len() - FAILED_SHOWN
+        ))?;
     }
     Ok(Outcome::Done)
 }

@@ -85,8 +85,9 @@ enum Outcome {
 /// Log lines to stderr, level by `RUST_LOG` or `--quiet`, without tearing a progress bar.
 fn start_log(quiet: bool) -> MultiProgress {
     let level = if quiet { "warn" } else { "info" };
-    let mut builder =
-        env_logger::Builder::from_env(env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")));
+    let mut builder = env_logger::Builder::from_env(
+        env_logger::Env::default().default_filter_or(format!("{level},diffsol=warn")),
+    );
     let logger = builder
         .format(|out, record| {
             use std::io::Write;
@@ -116,7 +117,11 @@ fn parse_near(text: &str) -> Result<(f64, f64), Failure> {
     let numbers: Option<Vec<f64>> = text.split(',').map(|t| t.trim().parse().ok()).collect();
     match numbers.as_deref() {
         Some(&[r, z]) if r.is_finite() && z.is_finite() => Ok((r, z)),
-        _ => Err(wrong("--near", format!("`{text}`"), "radius and height in au, such as 30,2.5")),
+        _ => Err(wrong(
+            "--near",
+            format!("`{text}`"),
+            "radius and height in au, such as 30,2.5",
+        )),
     }
 }
 
@@ -129,11 +134,19 @@ fn find_cell(run: &crate::store::RunFile, near: &str) -> Result<usize, Failure> 
     let c = &cells[cell];
     log::info!(
         "cell {cell} at R = {:.4} au, z = {:.4} au: n_H = {:.3e} cm^-3, T_gas = {:.1} K, T_dust = {:.1} K",
-        c.radius, c.height, c.n_h, c.t_gas, c.t_dust
+        c.radius,
+        c.height,
+        c.n_h,
+        c.t_gas,
+        c.t_dust
     );
     let status = run.statuses()[cell];
     if status != crate::run::record::CellStatus::Done {
-        log::warn!("this cell is {}: {}", status.word().replace('_', " "), run.reasons()[cell]);
+        log::warn!(
+            "this cell is {}: {}",
+            status.word().replace('_', " "),
+            run.reasons()[cell]
+        );
     }
     Ok(cell)
 }

@@ -1,7 +1,7 @@
 //! The verb `preview`.
 
-use super::print::{self, Table};
 use super::Outcome;
+use super::print::{self, Table};
 use crate::case;
 use crate::disk::write_table;
 use crate::errors::Failure;
@@ -24,7 +24,13 @@ pub struct Arguments {
 pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
     let case = case::open(&arguments.case)?;
     let run = Prepared::new(&case)?;
-    let phase = |p| run.chemistry.species.iter().filter(|s| s.phase == p).count();
+    let phase = |p| {
+        run.chemistry
+            .species
+            .iter()
+            .filter(|s| s.phase == p)
+            .count()
+    };
     print::out(&format!(
         "{}\n{} cells, {} snapshots; {} gas species, {} ices, {} reactions",
         case.title,
@@ -42,9 +48,21 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
             print::out(&warning.to_string())?;
         }
     } else if !run.warnings.is_empty() {
-        print::out(&format!("{} remarks on the network (--remarks shows them)", run.warnings.len()))?;
+        print::out(&format!(
+            "{} remarks on the network (--remarks shows them)",
+            run.warnings.len()
+        ))?;
     }
-    let heads = ["cell", "radius [au]", "height [au]", "n_H [cm^-3]", "T_gas [K]", "T_dust [K]", "zeta [s^-1]", "UV after A_V [Draine]"];
+    let heads = [
+        "cell",
+        "radius [au]",
+        "height [au]",
+        "n_H [cm^-3]",
+        "T_gas [K]",
+        "T_dust [K]",
+        "zeta [s^-1]",
+        "UV after A_V [Draine]",
+    ];
     let mut table = Table::new(heads);
     for (i, c) in run.disk.cells.iter().enumerate() {
         // What light is left for a typical exponent of extinction, 2 per mag.
@@ -65,7 +83,8 @@ pub fn preview(arguments: &Arguments) -> Result<Outcome, Failure> {
     table.print()?;
     if let Some(path) = &arguments.csv {
         let mut file = print::create(path, "--csv")?;
-        write_table(&run.disk, &mut file).map_err(|e| Failure::machine("writing the cells", path, e))?;
+        write_table(&run.disk, &mut file)
+            .map_err(|e| Failure::machine("writing the cells", path, e))?;
         log::info!("wrote {}", path.display());
     }
     Ok(Outcome::Done)

@@ -16,7 +16,10 @@ pub struct Table {
 
 impl Table {
     pub fn new<S: Into<String>>(heads: impl IntoIterator<Item = S>) -> Self {
-        Table { heads: heads.into_iter().map(Into::into).collect(), rows: Vec::new() }
+        Table {
+            heads: heads.into_iter().map(Into::into).collect(),
+            rows: Vec::new(),
+        }
     }
 
     /// Writes the table to stdout, columns aligned to the right. A reader that went away (`| head`)
@@ -31,7 +34,10 @@ impl Table {
         }
         let lines: Vec<String> = all()
             .map(|row| {
-                let cells = row.iter().zip(&widths).map(|(cell, width)| format!("{cell:>width$}"));
+                let cells = row
+                    .iter()
+                    .zip(&widths)
+                    .map(|(cell, width)| format!("{cell:>width$}"));
                 cells.collect::<Vec<_>>().join("  ")
             })
             .collect();
@@ -47,7 +53,9 @@ impl Table {
         for row in &self.rows {
             writer.write_record(row).map_err(failed)?;
         }
-        writer.flush().map_err(|e| Failure::machine("writing the CSV", path, e))?;
+        writer
+            .flush()
+            .map_err(|e| Failure::machine("writing the CSV", path, e))?;
         log::info!("wrote {}", path.display());
         Ok(())
     }
@@ -57,7 +65,11 @@ impl Table {
 pub fn create(path: &Path, option: &str) -> Result<std::fs::File, Failure> {
     std::fs::File::create(path).map_err(|cause| match cause.kind() {
         io::ErrorKind::StorageFull => Failure::machine("creating it", path, cause),
-        _ => wrong(option, format!("{} ({cause})", path.display()), "a file that can be written"),
+        _ => wrong(
+            option,
+            format!("{} ({cause})", path.display()),
+            "a file that can be written",
+        ),
     })
 }
 

@@ -33,7 +33,10 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
         log::debug!("network: {warning}");
     }
     if !prepared.warnings.is_empty() {
-        log::info!("{} remarks on the network (`preview --remarks` shows them)", prepared.warnings.len());
+        log::info!(
+            "{} remarks on the network (`preview --remarks` shows them)",
+            prepared.warnings.len()
+        );
     }
     for note in &prepared.header.notes {
         log::info!("{note}");
@@ -43,13 +46,25 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
         Some(n) => n,
         None => std::thread::available_parallelism().map_or(1, usize::from),
     };
-    let output = arguments.output.clone().unwrap_or_else(|| case.output.clone());
+    let output = arguments
+        .output
+        .clone()
+        .unwrap_or_else(|| case.output.clone());
     if output.extension().is_none_or(|e| e != "h5") {
-        return Err(wrong("--output", format!("`{}`", output.display()), "a name ending in .h5"));
+        return Err(wrong(
+            "--output",
+            format!("`{}`", output.display()),
+            "a name ending in .h5",
+        ));
     }
     let stop = StopFlag::new();
-    stop.listen().map_err(|e| Failure::machine("listening for signals", &output, e))?;
-    let options = Options { threads, fresh: arguments.fresh, retry: arguments.retry };
+    stop.listen()
+        .map_err(|e| Failure::machine("listening for signals", &output, e))?;
+    let options = Options {
+        threads,
+        fresh: arguments.fresh,
+        retry: arguments.retry,
+    };
     let ended = run::run(&prepared, &output, &options, bars, &stop);
     if matches!(ended, Err(Failure::Stopped(_))) {
         log::info!("stopped; the same command goes on from the finished cells");
@@ -58,7 +73,9 @@ pub fn run(arguments: &Arguments, bars: &MultiProgress) -> Result<Outcome, Failu
     if summary.failed > 0 {
         log::warn!(
             "{} of {} cells failed: `look {}` says where and why; `run --retry` tries them again",
-            summary.failed, summary.cells, output.display()
+            summary.failed,
+            summary.cells,
+            output.display()
         );
         return Ok(Outcome::SomeCellsFailed);
     }

@@ -132,15 +132,16 @@ pub enum Cause {
     Photodesorption {
         yields: f64,
     },
-    /// Langmuir-Hinshelwood. `own.share` includes the branching and the leaving (or staying)
-    /// share; `channels` are all channels of the pair, this one included, with their branching.
+    /// Langmuir-Hinshelwood. `share` includes the branching and the leaving (or staying) share.
     Surface {
         first: Binding,
         second: Binding,
         /// Whether both reactants are the same species.
         same: bool,
+        share: f64,
         own: Barrier,
-        channels: Vec<Barrier>,
+        /// The different barriers that channels of this pair cross, `own` among them.
+        barriers: Vec<Barrier>,
     },
 }
 
@@ -153,8 +154,6 @@ pub struct Barrier {
     pub width: f64,
     /// Mass that tunnels, amu.
     pub mass: f64,
-    /// Share of the attempts that take this channel.
-    pub share: f64,
 }
 
 /// One expanded reaction.

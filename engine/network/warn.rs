@@ -21,7 +21,6 @@ const ROUNDING: f64 = 1.01;
 /// Ratio of two pieces at their joint that still counts as meeting.
 const JUMP: f64 = 1.05;
 
-
 /// All warnings, by line.
 pub(super) fn all(network: &Network) -> Vec<Warning> {
     let mut warnings = Vec::new();

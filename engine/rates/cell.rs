@@ -156,10 +156,17 @@ impl<'a> Cell<'a> {
                 self.count(place);
                 k * n_h
             }
-            Cause::Capture { langevin, x_300k, range } => {
-                n_h * self.ranged(*range, |t| two_body::capture(*langevin, *x_300k, t))
-            }
-            Cause::Falloff { low, high, centre, range } => {
+            Cause::Capture {
+                langevin,
+                x_300k,
+                range,
+            } => n_h * self.ranged(*range, |t| two_body::capture(*langevin, *x_300k, t)),
+            Cause::Falloff {
+                low,
+                high,
+                centre,
+                range,
+            } => {
                 let limit = |[a, b, barrier]: [f64; 3]| move |t| power_law(a, b, barrier, t);
                 let low = self.ranged(*range, limit(*low));
                 let (at, _) = two_body::evaluation_temperature(*range, c.t_gas);
@@ -171,17 +178,23 @@ impl<'a> Cell<'a> {
                 });
                 1.0
             }
-            Cause::Light { rates, extinction, shield } => {
-                self.light(rates, *extinction, *shield)
-            }
-            Cause::Ionisation { value } => {
-                value * (c.zeta_cosmic + c.zeta_xray + c.zeta_nuclides)
-            }
+            Cause::Light {
+                rates,
+                extinction,
+                shield,
+            } => self.light(rates, *extinction, *shield),
+            Cause::Ionisation { value } => value * (c.zeta_cosmic + c.zeta_xray + c.zeta_nuclides),
             Cause::SecondaryLight { value } => {
                 value * (c.zeta_cosmic + c.zeta_xray) * light::secondary_dust_scale(c.dust_area)
             }
             Cause::HydrogenFormation { .. } => self.hydrogen_formation,
-            Cause::Charging { sticking, charge, mass, grain, share } => {
+            Cause::Charging {
+                sticking,
+                charge,
+                mass,
+                grain,
+                share,
+            } => {
                 let a = c.grain_radius;
                 share * n_h * dust::charging(*sticking, *charge, *mass, *grain, a, c.t_gas)
             }
@@ -203,10 +216,18 @@ impl<'a> Cell<'a> {
                 options.site_density,
                 options.lit_layers,
             ),
-            Cause::Surface { first, second, same, own, channels } => {
+            Cause::Surface {
+                first,
+                second,
+                same,
+                share,
+                own,
+                barriers,
+            } => {
                 let (density, t) = (options.site_density, c.t_dust);
                 let pair = [first, second];
-                surface::reaction_probability(pair, *own, channels, density, t)
+                share
+                    * surface::reaction_probability(pair, *own, barriers, density, t)
                     * surface::encounter(pair, *same, c.sites(density), density, t)
             }
         }

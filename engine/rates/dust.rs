@@ -61,7 +61,10 @@ mod tests {
     use super::*;
 
     fn close(value: f64, expected: f64, relative: f64) {
-        assert!((value / expected - 1.0).abs() < relative, "{value:e} instead of {expected:e}");
+        assert!(
+            (value / expected - 1.0).abs() < relative,
+            "{value:e} instead of {expected:e}"
+        );
     }
 
     /// Fails if a mass, a square root or the cross-section is off: e-folding times of freeze-out
@@ -89,19 +92,36 @@ mod tests {
         // Large tau: attraction tends to the bare Coulomb factor 1 + 1/tau.
         close(focusing(1e4, -1.0), 1.0 + 1e-4, 2e-2);
         // Repulsion: theta(1) = 1/2.
-        close(focusing(0.25, 1.0), (1.0 + 0.5f64).powi(2) * (-2.0f64).exp(), 1e-14);
+        close(
+            focusing(0.25, 1.0),
+            (1.0 + 0.5f64).powi(2) * (-2.0f64).exp(),
+            1e-14,
+        );
         // Ion on a neutral grain at 20 K: pi a^2 v J.
         let k = charging(1.0, 1, 29.018, 0, 1e-5, 20.0);
-        close(k, PI * 1e-10 * mean_speed(29.018, 20.0) * focusing(tau, 0.0), 1e-14);
+        close(
+            k,
+            PI * 1e-10 * mean_speed(29.018, 20.0) * focusing(tau, 0.0),
+            1e-14,
+        );
         // Electrons are attracted by positive grains, repelled by negative ones.
-        assert!(charging(0.6, -1, 5.4858e-4, 1, 1e-5, 20.0) > charging(0.6, -1, 5.4858e-4, -1, 1e-5, 20.0));
+        assert!(
+            charging(0.6, -1, 5.4858e-4, 1, 1e-5, 20.0)
+                > charging(0.6, -1, 5.4858e-4, -1, 1e-5, 20.0)
+        );
     }
 
     /// Fails if the sticking law of H is off: values at 10, 30, 100, 300, 800 K with 20 K grains,
     /// Hollenbach & McKee 1979 as evaluated in disk_relations.md.
     #[test]
     fn hydrogen_sticking_values() {
-        for (t, s) in [(10.0, 0.807), (30.0, 0.741), (100.0, 0.582), (300.0, 0.329), (800.0, 0.113)] {
+        for (t, s) in [
+            (10.0, 0.807),
+            (30.0, 0.741),
+            (100.0, 0.582),
+            (300.0, 0.329),
+            (800.0, 0.113),
+        ] {
             assert!((hydrogen_sticking(t, 20.0) - s).abs() < 6e-4, "at {t} K");
         }
     }

@@ -38,7 +38,13 @@ mod tests {
     use crate::rates::dust::accretion;
 
     fn binding(energy: f64, prefactor: f64, mass: f64) -> Binding {
-        Binding { energy, prefactor, hop_energy: energy, hop_barrier: 0.5 * energy, mass }
+        Binding {
+            energy,
+            prefactor,
+            hop_energy: energy,
+            hop_barrier: 0.5 * energy,
+            mass,
+        }
     }
 
     /// Fails if desorption or accretion is off by more than rounding: half-depletion temperatures
@@ -51,9 +57,24 @@ mod tests {
             (28.014, 1152.0, 4.51e14, [17.98, 19.39, 21.03, 22.99, 25.34]),
             (16.043, 1232.0, 5.43e13, [20.00, 21.63, 23.55, 25.85, 28.65]),
             (44.009, 3196.0, 6.81e16, [46.44, 49.79, 53.68, 58.22, 63.60]),
-            (17.031, 5362.0, 1.94e15, [83.13, 89.58, 97.11, 106.04, 116.79]),
-            (18.015, 5705.0, 4.96e15, [87.17, 93.83, 101.59, 110.76, 121.75]),
-            (32.042, 6621.0, 3.18e17, [94.79, 101.53, 109.31, 118.39, 129.12]),
+            (
+                17.031,
+                5362.0,
+                1.94e15,
+                [83.13, 89.58, 97.11, 106.04, 116.79],
+            ),
+            (
+                18.015,
+                5705.0,
+                4.96e15,
+                [87.17, 93.83, 101.59, 110.76, 121.75],
+            ),
+            (
+                32.042,
+                6621.0,
+                3.18e17,
+                [94.79, 101.53, 109.31, 118.39, 129.12],
+            ),
         ];
         for (mass, energy, nu, temperatures) in table {
             for (n_h, expected) in [1e4, 1e6, 1e8, 1e10, 1e12].into_iter().zip(temperatures) {
@@ -67,7 +88,10 @@ mod tests {
                         low = t;
                     }
                 }
-                assert!((low - expected).abs() < 0.012, "{low} instead of {expected} K ({energy} K)");
+                assert!(
+                    (low - expected).abs() < 0.012,
+                    "{low} instead of {expected} K ({energy} K)"
+                );
             }
         }
     }
@@ -76,7 +100,11 @@ mod tests {
     /// (binding.csv; Hasegawa, Herbst & Leung 1992 with n_s = 1.5e15 cm^-2).
     #[test]
     fn harmonic_frequencies() {
-        for (energy, mass, nu) in [(650.0, 1.008, 4.04e12), (1300.0, 28.01, 1.08e12), (5600.0, 18.015, 2.80e12)] {
+        for (energy, mass, nu) in [
+            (650.0, 1.008, 4.04e12),
+            (1300.0, 28.01, 1.08e12),
+            (5600.0, 18.015, 2.80e12),
+        ] {
             assert!((harmonic_frequency(1.5e15, energy, mass) / nu - 1.0).abs() < 5e-3);
         }
     }
@@ -87,6 +115,8 @@ mod tests {
     fn cosmic_ray_desorption_of_co() {
         let k = cosmic_desorption(&binding(1150.0, 1e12, 28.0), 1.3e-17);
         assert!((k / 2.31e-14 - 1.0).abs() < 5e-3, "{k:e}");
-        assert!((cosmic_desorption(&binding(1150.0, 1e12, 28.0), 1.3e-16) / k - 10.0).abs() < 1e-12);
+        assert!(
+            (cosmic_desorption(&binding(1150.0, 1e12, 28.0), 1.3e-16) / k - 10.0).abs() < 1e-12
+        );
     }
 }

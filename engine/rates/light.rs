@@ -16,7 +16,11 @@ pub const PHOTODESORPTION_EXTINCTION: f64 = 2.0;
 
 /// Attenuation exp(-gamma A_V) of one field, 1 if its strength already includes extinction.
 pub fn attenuation(kind: &FieldKind, light: &Light, gamma: f64) -> f64 {
-    if kind.attenuated { 1.0 } else { (-gamma * light.extinction).exp() }
+    if kind.attenuated {
+        1.0
+    } else {
+        (-gamma * light.extinction).exp()
+    }
 }
 
 /// Photon flux on the ice, cm^-2 s^-1 (4 pi J): the fields after extinction, and the secondary UV
@@ -30,9 +34,7 @@ pub fn flux_on_ice(
     let fields: f64 = kinds
         .iter()
         .zip(lights)
-        .map(|(kind, light)| {
-            light.strength * attenuation(kind, light, PHOTODESORPTION_EXTINCTION)
-        })
+        .map(|(kind, light)| light.strength * attenuation(kind, light, PHOTODESORPTION_EXTINCTION))
         .sum();
     DRAINE_PHOTON_FLUX * fields
         + SECONDARY_PHOTONS_PER_ZETA * zeta_cosmic_and_xray * secondary_dust_scale(dust_area)
@@ -51,8 +53,17 @@ mod tests {
     /// field does not grow when dust is removed. Hand values.
     #[test]
     fn flux_on_ice_adds_fields_after_extinction_and_scaled_secondary_photons() {
-        let kind = |attenuated| FieldKind { name: "sky".into(), spectrum: "draine".into(), attenuated };
-        let light = |strength, extinction| Light { strength, extinction, columns: vec![], shields: vec![] };
+        let kind = |attenuated| FieldKind {
+            name: "sky".into(),
+            spectrum: "draine".into(),
+            attenuated,
+        };
+        let light = |strength, extinction| Light {
+            strength,
+            extinction,
+            columns: vec![],
+            shields: vec![],
+        };
         let flux = flux_on_ice(
             &[kind(false), kind(true)],
             &[light(2.0, 1.5), light(3.0, 1.5)],

@@ -61,7 +61,10 @@ pub fn table(shielding: &Shielding, column: f64, h2: f64) -> (f64, bool) {
     let low = at(i, j) * (1.0 - u) + at(i, j + 1) * u;
     let high = at(i + 1, j) * (1.0 - u) + at(i + 1, j + 1) * u;
     let factor = 10f64.powf(low * (1.0 - v) + high * v);
-    (factor, outside(&shielding.log_column, x) || outside(&shielding.log_h2, y))
+    (
+        factor,
+        outside(&shielding.log_column, x) || outside(&shielding.log_h2, y),
+    )
 }
 
 /// The factor of one shielding law for light that passed `columns` (cm^-2, one per column
@@ -102,8 +105,14 @@ mod tests {
             (1e20, 5.351342e-5, 5.351361e-5),
             (1e22, 1.748488e-7, 1.748488e-7),
         ] {
-            assert!((draine_bertoldi(n, 1e5) / at_1 - 1.0).abs() < 1e-6, "N = {n:e}");
-            assert!((draine_bertoldi(n, 3e5) / at_3 - 1.0).abs() < 1e-6, "N = {n:e}");
+            assert!(
+                (draine_bertoldi(n, 1e5) / at_1 - 1.0).abs() < 1e-6,
+                "N = {n:e}"
+            );
+            assert!(
+                (draine_bertoldi(n, 3e5) / at_3 - 1.0).abs() < 1e-6,
+                "N = {n:e}"
+            );
         }
     }
 
@@ -122,7 +131,10 @@ mod tests {
             h2: 0,
             log_column: vec![0.0, 15.0, 16.0, 19.0],
             log_h2: vec![0.0, 21.0, 22.0],
-            log_factor: rows.iter().map(|r| r.iter().map(|f: &f64| f.log10()).collect()).collect(),
+            log_factor: rows
+                .iter()
+                .map(|r| r.iter().map(|f: &f64| f.log10()).collect())
+                .collect(),
         }
     }
 
@@ -138,7 +150,10 @@ mod tests {
             (0.0, 1e22, 0.01108),
         ] {
             let (f, outside) = table(&t, co, h2);
-            assert!((f / printed - 1.0).abs() < 1e-12 && !outside, "{f} for N(CO) = {co:e}");
+            assert!(
+                (f / printed - 1.0).abs() < 1e-12 && !outside,
+                "{f} for N(CO) = {co:e}"
+            );
         }
     }
 
@@ -158,7 +173,10 @@ mod tests {
     #[test]
     fn given_factors_replace_the_law_and_carbon_matches_hand_value() {
         let t = visser();
-        assert_eq!(factor(&t, &[1e22, 1e19], &[None, Some(0.5)], 1e5), (0.5, false));
+        assert_eq!(
+            factor(&t, &[1e22, 1e19], &[None, Some(0.5)], 1e5),
+            (0.5, false)
+        );
         assert!((carbon(1e17, 1e21) - (-1.88f64).exp() / 1.28).abs() < 1e-12);
     }
 }

@@ -10,7 +10,10 @@ use crate::network::model::{Cause, Chemistry, Phase};
 /// # Errors
 /// If a reaction names a species out of bounds or has an order above three.
 pub fn mechanism(chemistry: &Chemistry) -> Result<Mechanism, MechanismError> {
-    let ice_total = chemistry.species.iter().position(|s| s.phase == Phase::IceTotal);
+    let ice_total = chemistry
+        .species
+        .iter()
+        .position(|s| s.phase == Phase::IceTotal);
     let options = &chemistry.options;
     let mut falloffs = 0;
     let steps = chemistry
@@ -38,6 +41,14 @@ pub fn mechanism(chemistry: &Chemistry) -> Result<Mechanism, MechanismError> {
         })
         .collect();
     // [M] = n(H2) + n(H) + n(He): the colliders of the network's falloff and third-body data.
-    let colliders = ["H2", "H", "He"].iter().filter_map(|n| chemistry.find(n)).map(|s| (s, 1.0));
-    Mechanism::new(chemistry.species.len(), steps, colliders.collect(), ice_total)
+    let colliders = ["H2", "H", "He"]
+        .iter()
+        .filter_map(|n| chemistry.find(n))
+        .map(|s| (s, 1.0));
+    Mechanism::new(
+        chemistry.species.len(),
+        steps,
+        colliders.collect(),
+        ice_total,
+    )
 }

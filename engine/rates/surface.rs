@@ -29,22 +29,22 @@ pub fn crossing(pair: [&Binding; 2], barrier: Barrier, site_density: f64, t_dust
     a.max(b) * (-barrier.height / t_dust).exp().max(through)
 }
 
-/// Probability that two species which share a site react through `own` before one of them hops or
-/// desorbs: w p / (sum of w p over the `channels` of the pair + hops + desorptions) (Garrod & Pauly
-/// 2011, ApJ 735, 15, for one channel); the share itself where there is no barrier.
+/// Probability that two species which share a site cross the barrier `own` before they cross
+/// another of the pair's `barriers`, hop away or desorb: p / (sum of p + hops + desorptions)
+/// (Garrod & Pauly 2011, ApJ 735, 15, for one barrier); 1 where there is none.
 pub fn reaction_probability(
     pair: [&Binding; 2],
     own: Barrier,
-    channels: &[Barrier],
+    barriers: &[Barrier],
     site_density: f64,
     t_dust: f64,
 ) -> f64 {
     if own.height == 0.0 {
-        return own.share;
+        return 1.0;
     }
-    let rate = |b: &Barrier| b.share * crossing(pair, *b, site_density, t_dust);
+    let rate = |barrier: &Barrier| crossing(pair, *barrier, site_density, t_dust);
     let parts = pair.map(|b| hopping(b, site_density, t_dust) + thermal_desorption(b, t_dust));
-    let all: f64 = channels.iter().map(rate).sum::<f64>() + parts[0] + parts[1];
+    let all: f64 = barriers.iter().map(rate).sum::<f64>() + parts[0] + parts[1];
     let reacts = rate(&own);
     if reacts == 0.0 { 0.0 } else { reacts / all }
 }
@@ -67,17 +67,33 @@ mod tests {
     use super::*;
 
     fn hydrogen() -> Binding {
-        Binding { energy: 650.0, prefactor: 4.04e12, hop_energy: 650.0, hop_barrier: 227.5, mass: 1.008 }
+        Binding {
+            energy: 650.0,
+            prefactor: 4.04e12,
+            hop_energy: 650.0,
+            hop_barrier: 227.5,
+            mass: 1.008,
+        }
     }
 
     fn carbon_monoxide() -> Binding {
-        Binding { energy: 1390.0, prefactor: 9.14e14, hop_energy: 1300.0, hop_barrier: 650.0, mass: 28.01 }
+        Binding {
+            energy: 1390.0,
+            prefactor: 9.14e14,
+            hop_energy: 1300.0,
+            hop_barrier: 650.0,
+            mass: 28.01,
+        }
     }
 
     const REDUCED: f64 = 1.008 * 28.01 / 29.018;
 
     fn barrier(height: f64) -> Barrier {
-        Barrier { height, width: 1.0, mass: REDUCED, share: 1.0 }
+        Barrier {
+            height,
+            width: 1.0,
+            mass: REDUCED,
+        }
     }
 
     /// Fails if hbar, the width's unit or the square root is off. By hand with CODATA 2018:
@@ -101,22 +117,26 @@ mod tests {
         let kappa = |height, t| {
             reaction_probability([&h, &co], barrier(height), &[barrier(height)], 1.5e15, t)
         };
-        assert!((kappa(2500.0, 10.0) - 0.938).abs() < 2e-3, "{}", kappa(2500.0, 10.0));
+        assert!(
+            (kappa(2500.0, 10.0) - 0.938).abs() < 2e-3,
+            "{}",
+            kappa(2500.0, 10.0)
+        );
         let p = harmonic_frequency(1.5e15, 650.0, 1.008) * tunnelling(20000.0, 1.0, REDUCED);
         let slow = p / (hopping(&h, 1.5e15, 30.0) + thermal_desorption(&h, 30.0));
         assert!((kappa(20000.0, 30.0) / slow - 1.0).abs() < 1e-2);
         assert_eq!(kappa(0.0, 10.0), 1.0);
     }
 
-    /// Fails if channels of one pair do not compete: their probabilities must sum to at most one,
+    /// Fails if barriers of one pair do not compete: their probabilities must sum to at most one,
     /// in the ratio of their crossing rates.
     #[test]
-    fn channels_of_one_pair_compete() {
+    fn barriers_of_one_pair_compete() {
         let (h, co) = (hydrogen(), carbon_monoxide());
-        let channels = [barrier(2000.0), barrier(2600.0)];
+        let barriers = [barrier(2000.0), barrier(2600.0)];
         let kappa =
-            channels.map(|own| reaction_probability([&h, &co], own, &channels, 1.5e15, 8.0));
-        let p = channels.map(|own| crossing([&h, &co], own, 1.5e15, 8.0));
+            barriers.map(|own| reaction_probability([&h, &co], own, &barriers, 1.5e15, 8.0));
+        let p = barriers.map(|own| crossing([&h, &co], own, 1.5e15, 8.0));
         assert!(kappa[0] + kappa[1] <= 1.0 && kappa[0] + kappa[1] > 0.99);
         assert!((kappa[0] / kappa[1] / (p[0] / p[1]) - 1.0).abs() < 1e-12);
     }

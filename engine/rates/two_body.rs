@@ -46,8 +46,16 @@ pub fn pieces(pieces: &[Piece], below: Below, t: f64) -> (f64, Place) {
     };
     let piece = pieces.iter().find(|p| t <= p.valid[1]).unwrap_or(last);
     // Only the lowest piece can have `t` below its range: the others abut.
-    let (at, place) = evaluation_temperature(Range { valid: piece.valid, below }, t);
-    let k = at.map_or(0.0, |t| power_law(piece.at_300k, piece.slope, piece.barrier, t));
+    let (at, place) = evaluation_temperature(
+        Range {
+            valid: piece.valid,
+            below,
+        },
+        t,
+    );
+    let k = at.map_or(0.0, |t| {
+        power_law(piece.at_300k, piece.slope, piece.barrier, t)
+    });
     (k, place)
 }
 
@@ -56,7 +64,11 @@ pub fn pieces(pieces: &[Piece], below: Below, t: f64) -> (f64, Place) {
 /// g = 0.4767 x + 0.6200 for x >= 2, (x + 0.5090)^2/10.526 + 0.9754 below.
 pub fn capture(langevin: f64, x_300k: f64, t: f64) -> f64 {
     let x = x_300k * (300.0 / t).sqrt();
-    let g = if x >= 2.0 { 0.4767 * x + 0.62 } else { (x + 0.509).powi(2) / 10.526 + 0.9754 };
+    let g = if x >= 2.0 {
+        0.4767 * x + 0.62
+    } else {
+        (x + 0.509).powi(2) / 10.526 + 0.9754
+    };
     langevin * g
 }
 
@@ -75,16 +87,31 @@ mod tests {
         let cases = [
             (1.45, 1.855, reduced(18.015), 2.5579e-8, 5.5582e-9), // H3+ + H2O
             (2.59, 2.985, reduced(27.026), 3.9873e-8, 8.4380e-9), // H3+ + HCN
-            (2.16, 1.472, 29.018 * 17.031 / (29.018 + 17.031), 1.0198e-8, 2.3943e-9), // HCO+ + NH3
-            (1.45, 1.855, 12.011 * 18.015 / (12.011 + 18.015), 1.5333e-8, 3.3317e-9), // C+ + H2O
+            (
+                2.16,
+                1.472,
+                29.018 * 17.031 / (29.018 + 17.031),
+                1.0198e-8,
+                2.3943e-9,
+            ), // HCO+ + NH3
+            (
+                1.45,
+                1.855,
+                12.011 * 18.015 / (12.011 + 18.015),
+                1.5333e-8,
+                3.3317e-9,
+            ), // C+ + H2O
         ];
         for (alpha, dipole, mu, at_10, at_300) in cases {
             let langevin = 2.342e-9 * (alpha / mu as f64).sqrt();
-            let x = dipole * 1e-18
-                / (2.0 * alpha * 1e-24 * crate::units::BOLTZMANN * 300.0f64).sqrt();
+            let x =
+                dipole * 1e-18 / (2.0 * alpha * 1e-24 * crate::units::BOLTZMANN * 300.0f64).sqrt();
             for (t, expected) in [(10.0, at_10), (300.0, at_300)] {
                 let k = capture(langevin, x, t);
-                assert!((k / expected - 1.0).abs() < 2e-3, "{k:e} instead of {expected:e} at {t} K");
+                assert!(
+                    (k / expected - 1.0).abs() < 2e-3,
+                    "{k:e} instead of {expected:e} at {t} K"
+                );
             }
         }
     }
@@ -101,7 +128,12 @@ mod tests {
     #[test]
     fn validity_rules_hold_extend_and_zero() {
         let law = |below, t| {
-            let p = [Piece { at_300k: 2.0, slope: 1.0, barrier: 0.0, valid: [150.0, 600.0] }];
+            let p = [Piece {
+                at_300k: 2.0,
+                slope: 1.0,
+                barrier: 0.0,
+                valid: [150.0, 600.0],
+            }];
             pieces(&p, below, t)
         };
         assert_eq!(law(Below::Extend, 75.0), (0.5, Place::Below));
@@ -115,10 +147,23 @@ mod tests {
     #[test]
     fn pieces_are_used_each_in_its_own_range() {
         let p = [
-            Piece { at_300k: 1.0, slope: 0.0, barrier: 0.0, valid: [50.0, 200.0] },
-            Piece { at_300k: 3.0, slope: 0.0, barrier: 0.0, valid: [200.0, 400.0] },
+            Piece {
+                at_300k: 1.0,
+                slope: 0.0,
+                barrier: 0.0,
+                valid: [50.0, 200.0],
+            },
+            Piece {
+                at_300k: 3.0,
+                slope: 0.0,
+                barrier: 0.0,
+                valid: [200.0, 400.0],
+            },
         ];
         let k = |t| pieces(&p, Below::Zero, t).0;
-        assert_eq!([k(10.0), k(50.0), k(200.0), k(200.1), k(900.0)], [0.0, 1.0, 1.0, 3.0, 3.0]);
+        assert_eq!(
+            [k(10.0), k(50.0), k(200.0), k(200.1), k(900.0)],
+            [0.0, 1.0, 1.0, 3.0, 3.0]
+        );
     }
 }

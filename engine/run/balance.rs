@@ -46,16 +46,28 @@ impl Invariants {
     /// Sum over species of atoms times abundance, for every element (and `dust`).
     pub fn totals(&self, state: &[f64]) -> Vec<(String, f64)> {
         let sum = |list: &[(usize, f64)]| list.iter().map(|(id, n)| n * state[*id]).sum();
-        self.elements.iter().map(|(name, list)| (name.clone(), sum(list))).collect()
+        self.elements
+            .iter()
+            .map(|(name, list)| (name.clone(), sum(list)))
+            .collect()
     }
 
     /// Drifts of `state` since `start`. Elements and dust relative to their own totals, charge
     /// relative to the sum of |charge| x abundance, the ice total relative to itself (or to the
     /// abundance of all elements where there is hardly any ice).
     pub fn drift(&self, start: &[f64], state: &[f64]) -> Balance {
-        let mut balance = Balance { elements: 0.0, charge: 0.0, dust: 0.0, ice: 0.0 };
+        let mut balance = Balance {
+            elements: 0.0,
+            charge: 0.0,
+            dust: 0.0,
+            ice: 0.0,
+        };
         for ((name, before), (_, now)) in self.totals(start).iter().zip(self.totals(state)) {
-            let drift = if *before == 0.0 { now.abs() } else { (now / before - 1.0).abs() };
+            let drift = if *before == 0.0 {
+                now.abs()
+            } else {
+                (now / before - 1.0).abs()
+            };
             if name == "dust" {
                 balance.dust = drift;
             } else {
@@ -63,7 +75,11 @@ impl Invariants {
             }
         }
         let charge = |y: &[f64]| self.charges.iter().map(|(id, q)| q * y[*id]).sum::<f64>();
-        let scale: f64 = self.charges.iter().map(|(id, q)| (q * state[*id]).abs()).sum();
+        let scale: f64 = self
+            .charges
+            .iter()
+            .map(|(id, q)| (q * state[*id]).abs())
+            .sum();
         if scale > 0.0 {
             balance.charge = (charge(state) - charge(start)).abs() / scale;
         }

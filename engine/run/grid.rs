@@ -85,13 +85,20 @@ pub fn run(
     let ended = run_cells(&todo, options.threads, &compute, &mut sink, stop);
     log::info!("{}", progress.finish());
     ended?;
-    let failed = journal.finished().filter(|(_, status)| *status == CellStatus::Failed).count();
+    let failed = journal
+        .finished()
+        .filter(|(_, status)| *status == CellStatus::Failed)
+        .count();
     let records = journal.records();
     store::assemble(output, &run.header, &mut |cell| records.record(cell))?;
     if failed == 0 {
         journal.remove()?;
     }
-    Ok(Summary { cells, failed, before })
+    Ok(Summary {
+        cells,
+        failed,
+        before,
+    })
 }
 
 /// Makes a run file from a journal, finished or under way. Returns how many of how many cells.
@@ -128,7 +135,11 @@ fn already_done(
     }
     log::info!("{} holds this run already: nothing to do", output.display());
     let cells = there.statuses().len();
-    Ok(Some(Summary { cells, failed, before: cells }))
+    Ok(Some(Summary {
+        cells,
+        failed,
+        before: cells,
+    }))
 }
 
 /// A folder that is missing or cannot be written to is said before hours of work, not after.
@@ -139,7 +150,13 @@ fn check_folder(output: &Path) -> Result<(), Failure> {
     };
     let wrong = |found: String| {
         let entry = format!("folder of {}", output.display());
-        InputError::new(folder, None, entry, found, "a folder that can be written to")
+        InputError::new(
+            folder,
+            None,
+            entry,
+            found,
+            "a folder that can be written to",
+        )
     };
     match std::fs::metadata(folder) {
         Ok(data) if data.is_dir() => {}

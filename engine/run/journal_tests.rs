@@ -149,7 +149,7 @@ fn an_interrupted_creation_starts_over() {
         fs::write(&path, &opening[..length]).expect("writes");
         assert!(read_only(&path).is_err(), "read a header of {length} bytes");
         let journal = Journal::open_or_create(&path, &header(8), false).expect("creates");
-        assert_eq!(cells_of(&journal), []);
+        assert!(cells_of(&journal).is_empty());
         drop(journal);
         assert_eq!(fs::read(&path).expect("there"), opening);
     }
@@ -226,7 +226,7 @@ fn other_inputs_are_refused_with_what_differs_and_starting_over_takes_them() {
         assert_eq!(fs::read(&path).expect("there"), bytes);
     }
     let fresh = Journal::open_or_create(&path, &cases[0].1, true).expect("starts over");
-    assert_eq!(cells_of(&fresh), []);
+    assert!(cells_of(&fresh).is_empty());
     drop(fresh);
     assert_eq!(
         read_only(&path).expect("reads").header().case_text,

@@ -43,7 +43,13 @@ impl Prepared {
         let chemistry = network::expand(&network, &case.grains).map_err(Failure::Input)?;
         let mechanism = rates::mechanism(&chemistry).map_err(|error| {
             let found = error.to_string();
-            InputError::new(&path, None, "network", found, "steps the kinetics core can carry")
+            InputError::new(
+                &path,
+                None,
+                "network",
+                found,
+                "steps the kinetics core can carry",
+            )
         })?;
         let disk = case.disk_for(&chemistry)?;
         let starts = starts(case, &network, &chemistry, &disk)?;
@@ -57,7 +63,10 @@ impl Prepared {
             network_text: case.network_text.clone(),
             species: chemistry.species.iter().map(SpeciesInfo::from).collect(),
             times_yr: case.snapshots.iter().map(|t| t / YEAR).collect(),
-            tolerances: Tolerances { relative: case.relative, smallest: case.smallest },
+            tolerances: Tolerances {
+                relative: case.relative,
+                smallest: case.smallest,
+            },
             caution_names: CAUTIONS.iter().map(|name| (*name).to_string()).collect(),
             notes,
             disk: disk.clone(),
@@ -70,8 +79,14 @@ impl Prepared {
             disk,
             starts,
             times: case.snapshots.clone(),
-            tolerance: Tolerance { relative: case.relative, smallest: case.smallest },
-            setting: Setting { turbulence: case.turbulence, colliders: case.colliders },
+            tolerance: Tolerance {
+                relative: case.relative,
+                smallest: case.smallest,
+            },
+            setting: Setting {
+                turbulence: case.turbulence,
+                colliders: case.colliders,
+            },
             warnings: network.warnings,
         })
     }
@@ -95,7 +110,11 @@ fn starts(
     let of_cell = |cell: &crate::disk::conditions::Conditions| {
         start_state(&case.start, &compositions, chemistry, cell.dust_abundance())
     };
-    disk.cells.iter().map(of_cell).collect::<Result<_, _>>().map_err(Failure::from)
+    disk.cells
+        .iter()
+        .map(of_cell)
+        .collect::<Result<_, _>>()
+        .map_err(Failure::from)
 }
 
 /// The numerical kernel in use. The linear algebra library chooses its instructions by what the

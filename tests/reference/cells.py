@@ -17,6 +17,10 @@ UNITS = {
     "cm/s": 1.0, "m/s": 100.0, "km/s": 1.0e5,
 }
 
+# Mean abundances per H of the gas towards a field's source, where neither table nor case says more
+# (defaults documented in cases/README.md).
+ASSUMED_COLUMNS = {"H2": 0.5, "CO": 5.0e-5, "N2": 1.0e-5, "C": 1.0e-5}
+
 
 def quantity(value, default_unit="1"):
     """`3 Myr` or a bare number in `default_unit`, to cgs."""
@@ -126,7 +130,7 @@ def read_case(path, table=None, network=None):
         table = path.parent / disk["table"]
     fields = [Field(f["name"], f.get("spectrum", "draine"), bool(f.get("attenuated", False)))
               for f in disk.get("fields") or [{"name": "sky"}]]
-    cells = read_table(table, fields, disk.get("assumed_columns") or {})
+    cells = read_table(table, fields, ASSUMED_COLUMNS | (disk.get("assumed_columns") or {}))
     return Case(path, Path(network), raw, cells, fields)
 
 

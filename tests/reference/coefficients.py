@@ -151,6 +151,16 @@ class Context:
         frequency = rates.oscillation_frequency(energy, names.mass(adsorbed), self.grains["site_density"])
         return frequency, rates.hopping(self.cell.t_dust, frequency, barrier)
 
+    def _barriers(self, a, b):
+        """The different barriers (height, width, mass) that channels of this pair cross."""
+        found = set()
+        for line in self.network.raw["surface"]:
+            if sorted(names.parse_change(line["change"])[0]) == sorted((a, b)):
+                weight = line.get("tunnelling_mass") or rates.reduced_mass(names.mass(a), names.mass(b))
+                width = 1.0 if line.get("width") is None else line["width"]
+                found.add((line.get("barrier", 0.0), width, weight))
+        return found
+
     def _surface(self, reaction, line):
         a, b = reaction.consumed
         (freq_a, hop_a), (freq_b, hop_b) = self.hop(a), self.hop(b)
@@ -159,8 +169,13 @@ class Context:
         if barrier > 0.0:
             weight = line.get("tunnelling_mass") or rates.reduced_mass(names.mass(a), names.mass(b))
             width = 1.0 if line.get("width") is None else line["width"]
-            attempts = max(freq_a, freq_b) * rates.over_or_through(self.cell.t_dust, width, weight, barrier)
+
+            def attempts(height, width, weight):
+                return max(freq_a, freq_b) * rates.over_or_through(self.cell.t_dust, width, weight, height)
+
+            own = attempts(barrier, width, weight)
+            others = sum(attempts(*rival) for rival in self._barriers(a, b) - {(barrier, width, weight)})
             away = sum(rates.thermal_desorption(self.cell.t_dust, *self.binding(self.network.ice_line(s))) for s in (a, b))
-            kappa = rates.reaction_probability(attempts, hop_a + hop_b + away)
+            kappa = rates.reaction_probability(own, others + hop_a + hop_b + away)
         count = rates.sites(self.cell.dust_area, self.grains["site_density"])
         return Coefficient(reaction.extra["share"] * kappa * rates.meeting(hop_a, hop_b, a == b, count))

@@ -9,16 +9,17 @@ over to the next at the last time reached. `LADDER` is that order.
 import warnings
 
 import numpy as np
-from scipy.integrate import solve_ivp
+from scipy.integrate import BDF, LSODA, Radau
 
 from .coefficients import coefficients
 from .system import System
 
 SMALLEST = 1.0e-22
 FIRST_STEP = 1.0e-12  # s: thermal desorption of warm volatile ice takes 1e-11 s
+METHODS = {"LSODA": LSODA, "BDF": BDF, "Radau": Radau}
 LADDER = (("LSODA", 1.0e-7), ("LSODA", 1.0e-6), ("BDF", 1.0e-5), ("Radau", 1.0e-5))
 SECOND_METHOD = (("BDF", 1.0e-5), ("Radau", 1.0e-5))
-EVALUATIONS = 300_000
+EVALUATIONS = 30_000
 
 
 class Crawls(RuntimeError):
@@ -74,13 +75,15 @@ def _attempt(system, x, now, times, method, relative):
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
-            for end in [times] if now == 0.0 else [[t] for t in times]:
-                out = solve_ivp(rhs, (now, end[-1]), x, method=method, t_eval=end, jac=jacobian,
-                                rtol=relative, atol=SMALLEST, first_step=FIRST_STEP if now == 0.0 else None)
-                got.extend(out.y.T)
-                if not out.success:
-                    return got, out.message
-                now, x = end[-1], got[-1]
+            solver = METHODS[method](rhs, now, x, times[-1], jac=jacobian, rtol=relative, atol=SMALLEST,
+                                     first_step=FIRST_STEP if now == 0.0 else None)
+            while solver.status == "running":
+                why = solver.step()
+                if solver.status == "failed":
+                    return got, why
+                between = solver.dense_output()
+                while len(got) < len(times) and times[len(got)] <= solver.t:
+                    got.append(between(times[len(got)]))
     except Crawls:
         return got, f"more than {EVALUATIONS} evaluations"
     return got, "done"

@@ -7,7 +7,7 @@ from math import exp, log10, pi, sqrt
 
 # CODATA 2018, cgs
 BOLTZMANN = 1.380649e-16
-HBAR = 1.054571817e-27
+HBAR = 6.62607015e-27 / (2.0 * pi)
 AMU = 1.66053906660e-24
 ELECTRON_CHARGE = 1.602176634e-19 * 2.99792458e9  # esu
 YEAR = 3.15576e7

@@ -2,8 +2,8 @@
 //! reactions on ices.
 
 use super::{Expansion, Origin, default_within};
-use crate::network::layout::{IceLine, Standing, SurfaceLine};
 use crate::network::groups::Group;
+use crate::network::layout::{IceLine, Standing, SurfaceLine};
 use crate::network::model::{Barrier, Binding, Cause, Species};
 use crate::network::read::Entry;
 
@@ -177,16 +177,15 @@ impl Expansion<'_> {
         let gas = network.roster.gas;
         let pair = [self.binding(a - gas), self.binding(b - gas)];
         let own = barrier(line, &pair);
-        let channels = self.channels(entry, &pair);
+        let barriers = self.barriers(entry, &pair);
+        let branching = line.share.unwrap_or(1.0);
         let cause = |share: f64| Cause::Surface {
             first: pair[0].clone(),
             second: pair[1].clone(),
             same: a == b,
-            own: Barrier {
-                share: own.share * share,
-                ..own
-            },
-            channels: channels.clone(),
+            share: branching * share,
+            own,
+            barriers: barriers.clone(),
         };
         let stays_in_ice = |place: &usize| network.roster.is_ice(*place);
         let consumed = self.ids(&entry.reactants);
@@ -197,7 +196,13 @@ impl Expansion<'_> {
             return;
         }
         let leaves = line.leaves.unwrap_or(self.options.leaving_share);
-        self.add(change, consumed.clone(), products, cause(1.0 - leaves), &origin);
+        self.add(
+            change,
+            consumed.clone(),
+            products,
+            cause(1.0 - leaves),
+            &origin,
+        );
         if leaves > 0.0 {
             let gas_form = |place: &usize| network.roster.gas_form(*place);
             let gone: Vec<usize> = entry.products.iter().map(gas_form).collect();
@@ -206,13 +211,19 @@ impl Expansion<'_> {
         }
     }
 
-    /// The barriers of all channels of the pair that meets in `entry`.
-    fn channels(&self, entry: &Entry, pair: &[Binding; 2]) -> Vec<Barrier> {
+    /// The different barriers that the channels of the pair of `entry` cross.
+    fn barriers(&self, entry: &Entry, pair: &[Binding; 2]) -> Vec<Barrier> {
         let met = entry.reactant_set();
-        let all = self.network.entries.iter();
-        all.filter(|other| other.group == Group::Surface && other.reactant_set() == met)
-            .map(|other| barrier(&self.network.file.surface[other.index], pair))
-            .collect()
+        let mut barriers = Vec::new();
+        for other in &self.network.entries {
+            if other.group == Group::Surface && other.reactant_set() == met {
+                let barrier = barrier(&self.network.file.surface[other.index], pair);
+                if !barriers.contains(&barrier) {
+                    barriers.push(barrier);
+                }
+            }
+        }
+        barriers
     }
 }
 
@@ -234,7 +245,6 @@ fn barrier(line: &SurfaceLine, pair: &[Binding; 2]) -> Barrier {
         // Without a barrier the width plays no part.
         width: line.width.unwrap_or(1.0),
         mass: line.tunnelling_mass.unwrap_or(reduced_mass),
-        share: line.share.unwrap_or(1.0),
     }
 }
 

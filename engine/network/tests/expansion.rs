@@ -280,11 +280,13 @@ fn surface_causes_follow_line_and_options() {
                 first,
                 second,
                 same,
-                barrier,
-                width,
-                tunnelling_mass,
                 share,
-            } => (first, second, same, barrier, width, tunnelling_mass, share),
+                own,
+                barriers,
+            } => {
+                assert_eq!(barriers, [own]);
+                (first, second, same, own.height, own.width, own.mass, share)
+            }
             other => panic!("{other:?}"),
         };
     let (h, co, same, barrier, width, mass, share) = of("H(ads) + CO(ads) -> HCO(ads)", &options);
