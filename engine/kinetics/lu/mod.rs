@@ -4,6 +4,7 @@
 //! It never knows kinetics: any square pattern, any values. Ordering (`order`, `pattern`) is
 //! shared by all threads; numbers (`factors`) belong to one; `solver` fits them to the integrator.
 
+mod dense;
 mod factors;
 mod order;
 mod pattern;
