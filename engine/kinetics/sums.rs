@@ -202,5 +202,41 @@ mod tests {
         let mut out = [f64::NAN; 4];
         sums.evaluate(&source, &mut out);
         assert_eq!(out, [191.0, 0.0, -2999.0, -1e5]);
+        out.fill(f64::NAN);
+        sums.evaluate_exactly(&source, &mut out);
+        assert_eq!(out, [191.0, 0.0, -2999.0, -1e5]);
+    }
+
+    /// Three rows that exchange fluxes in two cycles, as charge states of dust do by way of many
+    /// ions: round-off of the gross fluxes in any row, or of the weight 3, would break their sum.
+    #[test]
+    fn rows_add_up_to_the_round_off_of_the_net() {
+        let mut random = fastrand::Rng::with_seed(8);
+        let mut source: Vec<f64> = (0..40).map(|_| 1e6 * random.f64()).collect();
+        let mut entries = Vec::new();
+        for term in 0..40 {
+            let weight = if term % 7 == 0 { 3 } else { 1 };
+            let (from, to) = [(0, 1), (1, 0), (1, 2), (2, 1)][term % 4];
+            entries.extend([(from, term, -weight), (to, term, weight)]);
+        }
+        // Balance both exchanges, so that the net changes are round-off of single fluxes.
+        for (there, back) in [(0, 1), (2, 3)] {
+            let flux = |way| -> f64 {
+                let terms = entries
+                    .iter()
+                    .filter(|(_, term, w)| term % 4 == way && *w > 0);
+                terms.map(|&(_, term, w)| f64::from(w) * source[term]).sum()
+            };
+            let excess = flux(there) - flux(back);
+            source[4 * 2 + if excess > 0.0 { back } else { there }] += excess.abs();
+        }
+        let sums = SignedSums::new(3, &entries);
+        let (mut plain, mut exact) = ([0.0; 3], [0.0; 3]);
+        sums.evaluate(&source, &mut plain);
+        sums.evaluate_exactly(&source, &mut exact);
+        assert!(exact.iter().any(|&net| net != 0.0), "{exact:?}");
+        let total = |rows: &[f64; 3]| (rows[0] + rows[1] + rows[2]).abs();
+        assert!(total(&exact) < 1e-24, "{exact:?}");
+        assert!(total(&plain) > 1e-12, "{plain:?}: no longer needed?");
     }
 }
