@@ -125,14 +125,12 @@ fn head(elimination: &Elimination) -> usize {
     for &column in elimination.lower.iter().flatten() {
         below[column] += 1;
     }
+    let dense = |head: usize| (count - head).pow(3) / (3 * DENSE_PER_SPARSE);
     let mut sparse = 0;
-    let mut best = (usize::MAX, 0);
-    for head in 0..=count {
-        let cost = sparse + (count - head).pow(3) / (3 * DENSE_PER_SPARSE);
-        best = best.min((cost, head));
-        if head < count {
-            sparse += below[head] * elimination.upper[head].len();
-        }
+    let mut best = (dense(0), 0);
+    for (place, (below, upper)) in below.iter().zip(&elimination.upper).enumerate() {
+        sparse += below * upper.len();
+        best = best.min((sparse + dense(place + 1), place + 1));
     }
     best.1
 }
