@@ -1,8 +1,11 @@
 //! Owns the right-hand side: the flux of every step and its sum into the change of every species.
 //!
 //! Steps that make the same change, or exactly the opposite one (freeze-out and desorption), are
-//! summed before they reach the species: the sums of elements then keep the digits that would be
-//! lost between two large opposing numbers. It never keeps anything between calls.
+//! summed before they reach the species, and the sums carry their rounding errors along. Both are
+//! for the linear invariants: each row's round-off must be that of its net change, or the rows of,
+//! say, the charge states of dust, where gross fluxes are 1e13 times the net one, do not add up to
+//! zero; over a step of 1e13 s that was a drift of the dust number of 6e-3 in the demo, and noise
+//! that failed Newton's iteration (17,000 steps for 2,200). It never keeps anything between calls.
 
 use std::collections::HashMap;
 
@@ -209,7 +212,7 @@ impl Mechanism {
         for &Merge { into, from, sign } in &self.flux_plan.merges {
             fluxes[into as usize] += sign * fluxes[from as usize];
         }
-        self.flux_plan.sums.evaluate(&fluxes, dy);
+        self.flux_plan.sums.evaluate_exactly(&fluxes, dy);
         scratch.fluxes = fluxes;
     }
 }

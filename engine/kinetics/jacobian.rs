@@ -144,6 +144,11 @@ impl JacobianPlan {
         }
     }
 
+    /// The pattern in compressed columns, rows ascending, with the full diagonal.
+    pub fn pattern(&self) -> (&[usize], &[usize]) {
+        (&self.col_ptr, &self.row_idx)
+    }
+
     /// The number of partial derivatives held at once.
     pub fn slots(&self) -> usize {
         self.slots
@@ -154,7 +159,7 @@ impl Mechanism {
     /// The pattern in compressed columns: `row_idx[col_ptr[j]..col_ptr[j + 1]]` are the rows of
     /// column j, ascending. The diagonal is always full.
     pub fn pattern(&self) -> (&[usize], &[usize]) {
-        (&self.jacobian_plan.col_ptr, &self.jacobian_plan.row_idx)
+        self.jacobian_plan.pattern()
     }
 
     /// The values of d(dy_i/dt)/dy_j in the order of [`Mechanism::pattern`].

@@ -6,6 +6,8 @@
 use super::factor::FactorValue;
 use super::fluxes::FluxPlan;
 use super::jacobian::JacobianPlan;
+use super::lu::Pattern;
+use std::sync::Arc;
 
 /// A state-dependent factor of a flux.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -119,6 +121,8 @@ pub struct Mechanism {
     pub(super) factors: Vec<Factor>,
     pub(super) flux_plan: FluxPlan,
     pub(super) jacobian_plan: JacobianPlan,
+    /// The order and pattern of the LU of I - c J, shared by all threads.
+    elimination: Arc<Pattern>,
 }
 
 impl Mechanism {
@@ -165,6 +169,8 @@ impl Mechanism {
         let flux_plan = FluxPlan::new(species, &steps, &factors);
         let jacobian_plan =
             JacobianPlan::new(species, &steps, &factors, &weights, ice_total, &flux_plan);
+        let (col_ptr, row_idx) = jacobian_plan.pattern();
+        let elimination = Arc::new(Pattern::new(col_ptr, row_idx));
         Ok(Mechanism {
             species,
             steps,
@@ -173,6 +179,7 @@ impl Mechanism {
             factors,
             flux_plan,
             jacobian_plan,
+            elimination,
         })
     }
 
@@ -184,6 +191,11 @@ impl Mechanism {
     /// The steps as given.
     pub fn steps(&self) -> &[Step] {
         &self.steps
+    }
+
+    /// The plan of the factorisation of I - c J.
+    pub fn elimination(&self) -> &Arc<Pattern> {
+        &self.elimination
     }
 
     /// Work space for one thread.

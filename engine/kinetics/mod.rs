@@ -12,8 +12,9 @@ pub mod integrate;
 #[cfg(test)]
 mod invented_network;
 pub mod jacobian;
+pub mod lu;
 pub mod mechanism;
 pub mod sums;
 
-pub use integrate::{Outcome, Status, Tolerance, Work, integrate};
+pub use integrate::{LinearAlgebra, Outcome, Status, Tolerance, Work, integrate, integrate_with};
 pub use mechanism::{Coefficients, Factor, Falloff, Mechanism, MechanismError, Scratch, Step};

@@ -133,8 +133,5 @@ fn kernel_name() -> String {
     };
     #[cfg(not(target_arch = "x86_64"))]
     let wide = "baseline";
-    format!(
-        "diffsol BDF, faer sparse LU, {} {wide}",
-        std::env::consts::ARCH
-    )
+    format!("diffsol BDF, static LU, {} {wide}", std::env::consts::ARCH)
 }
