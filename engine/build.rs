@@ -15,10 +15,20 @@ fn main() -> io::Result<()> {
     let mut hash = Sha256::new();
     for file in &files {
         // The name too, so that moving code counts; relative, so that the folder does not.
-        hash.update(file.strip_prefix(&top).unwrap_or(file).to_string_lossy().as_bytes());
+        hash.update(
+            file.strip_prefix(&top)
+                .unwrap_or(file)
+                .to_string_lossy()
+                .as_bytes(),
+        );
         hash.update(fs::read(file)?);
     }
-    let short: String = hash.finalize().iter().take(4).map(|b| format!("{b:02x}")).collect();
+    let short: String = hash
+        .finalize()
+        .iter()
+        .take(4)
+        .map(|b| format!("{b:02x}"))
+        .collect();
     println!("cargo:rustc-env=FROSTCLOCK_BUILD={short}");
     for watched in ["engine", "Cargo.lock", "Cargo.toml"] {
         println!("cargo:rerun-if-changed={watched}");
