@@ -129,6 +129,13 @@ fn wrong_cases_are_refused_where_they_are_wrong() {
             "whole number",
         ),
         (
+            "charge_states: 2",
+            "charge_states: 2, active_layers: 0.5",
+            16,
+            "grains.active_layers",
+            "from 1 to 1000",
+        ),
+        (
             "1.0e15 cm^-2",
             "1.0e15 cm^-3",
             16,
