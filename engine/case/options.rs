@@ -12,10 +12,11 @@ const TOLERANCE: Bounds = Bounds {
     allows: |x| (1.0e-12..=0.1).contains(&x),
     words: "from 1e-12 to 0.1",
 };
-/// Above 1e-10 the floor hides species every user asks for.
+/// Above 1e-10 the floor hides species every user asks for; far below 1e-40 the integrator chases
+/// numbers that mean nothing.
 const FLOOR: Bounds = Bounds {
-    allows: |x| x > 0.0 && x <= 1.0e-10,
-    words: "above 0, at most 1e-10",
+    allows: |x| (1.0e-40..=1.0e-10).contains(&x),
+    words: "from 1e-40 to 1e-10",
 };
 const LAYERS: Bounds = Bounds {
     allows: |x| x > 0.0 && x <= 1000.0,

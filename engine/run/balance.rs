@@ -80,9 +80,8 @@ impl Invariants {
             .iter()
             .map(|(id, q)| (q * state[*id]).abs())
             .sum();
-        if scale > 0.0 {
-            balance.charge = (charge(state) - charge(start)).abs() / scale;
-        }
+        // Below 1e-20 per H there is no charge to speak of: compare with that.
+        balance.charge = (charge(state) - charge(start)).abs() / scale.max(1e-20);
         if let Some(total) = self.ice_total {
             let sum: f64 = self.ices.iter().map(|id| state[*id]).sum();
             // Below 1e-15 per H there is no ice to speak of: compare with that.

@@ -118,7 +118,7 @@ fn wrong_cases_are_refused_where_they_are_wrong() {
             "title: t\naccuracy: {smallest: 0}",
             2,
             "accuracy.smallest",
-            "above 0",
+            "from 1e-40",
         ),
         ("title: t", "title: t\noutput: run.txt", 2, "output", ".h5"),
         (
