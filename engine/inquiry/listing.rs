@@ -223,6 +223,27 @@ fn natural(chemistry: &Chemistry, reaction: &Reaction, c: &Conditions) -> (f64, 
     }
 }
 
+/// The cause of a reaction in words.
+pub fn cause(reaction: &Reaction) -> &'static str {
+    match reaction.cause {
+        Cause::PowerLaw { .. } if reaction.reactants.len() == 3 => "three-body",
+        Cause::PowerLaw { .. } => "two-body",
+        Cause::ThirdBody { .. } => "third body",
+        Cause::Capture { .. } => "capture",
+        Cause::Falloff { .. } => "falloff",
+        Cause::Light { .. } => "light",
+        Cause::Ionisation { .. } => "ionising particles",
+        Cause::SecondaryLight { .. } => "secondary light",
+        Cause::HydrogenFormation { .. } => "H2 formation",
+        Cause::Charging { .. } => "grain charging",
+        Cause::Accretion { .. } => "freeze-out",
+        Cause::ThermalDesorption { .. } => "thermal desorption",
+        Cause::CosmicDesorption { .. } => "cosmic-ray desorption",
+        Cause::Photodesorption { .. } => "photodesorption",
+        Cause::Surface { .. } => "ice surface",
+    }
+}
+
 /// In words, if a law is used where it is not known.
 fn outside(chemistry: &Chemistry, cause: &Cause, asked: &Asked) -> Option<String> {
     let (valid, below) = match cause {

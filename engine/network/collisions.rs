@@ -73,7 +73,26 @@ fn pairs(network: &Network) -> BTreeMap<[usize; 2], Vec<(&Entry, Coefficient<'_>
     pairs
 }
 
-/// Temperatures on `range`, its ends included.
+/// Temperatures on `range`: its ends, steps between them, and where any of `channels` begins or
+/// ends, since between those a coefficient may peak only there.
+fn temperatures(network: &Network, channels: &[&Entry], range: [f64; 2]) -> Vec<f64> {
+    let file = &network.file;
+    let ends = |entry: &&Entry| match entry.group {
+        Group::Gas => groups::pieces(&file.gas[entry.index])
+            .iter()
+            .flat_map(|piece| piece.valid)
+            .collect(),
+        Group::Capture => file.capture[entry.index].valid.to_vec(),
+        Group::Falloff => file.falloff[entry.index].valid.to_vec(),
+        _ => Vec::new(),
+    };
+    let within = |t: &f64| (range[0]..=range[1]).contains(t);
+    grid(range)
+        .chain(channels.iter().flat_map(ends).filter(within))
+        .collect()
+}
+
+/// Steps on `range`, its ends included.
 fn grid([low, high]: [f64; 2]) -> impl Iterator<Item = f64> {
     let step = (high / low).ln() / STEPS as f64;
     (0..=STEPS).map(move |i| match i {
@@ -97,7 +116,9 @@ pub(super) fn above_limit(network: &Network, warnings: &mut Vec<Warning>) {
         let pair = [&network.roster.species[*a], &network.roster.species[*b]];
         let total = |t: f64| channels.iter().map(|(_, k)| k(t)).sum::<f64>();
         let worst = |range, limit: &dyn Fn(f64) -> f64| {
-            grid(range)
+            let entries: Vec<&Entry> = channels.iter().map(|(entry, _)| *entry).collect();
+            temperatures(network, &entries, range)
+                .into_iter()
                 .map(|t| (t, total(t), limit(t)))
                 .filter(|(_, k, limit)| *k > ROUNDING * limit)
                 .max_by(|x, y| (x.1 / x.2).total_cmp(&(y.1 / y.2)))

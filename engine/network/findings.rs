@@ -84,7 +84,7 @@ impl WarningKind {
     pub fn why(self) -> &'static str {
         match self {
             WarningKind::NeverFormed => "it can only be what the start gives",
-            WarningKind::NeverDestroyed => "whatever forms it piles up in it for ever",
+            WarningKind::NeverDestroyed => "whatever becomes it stays it for ever",
             WarningKind::AboveCollisionLimit => "they react more often than they can meet",
             WarningKind::Endothermic => {
                 "cold gas would get the heat for nothing; give a barrier, or the reason as `endothermic:`"

@@ -147,12 +147,13 @@ pub fn show(arguments: &Arguments) -> Result<Outcome, Failure> {
         "coefficient",
         "unit",
         "reaction",
+        "cause",
         "outside its range",
         "standing",
         "source",
     ];
     let mut table = Table::new(heads);
-    table.words = vec![2, 3, 4, 5, 6];
+    table.words = vec![2, 3, 4, 5, 6, 7];
     table.rows = rows.iter().map(|row| shown(&chemistry, row)).collect();
     table.print()?;
     let beyond = rows.iter().filter(|row| row.outside.is_some()).count();
@@ -171,6 +172,7 @@ fn shown(chemistry: &Chemistry, row: &Row) -> Vec<String> {
         format!("{:.3e}", row.value),
         row.unit.to_string(),
         reaction.change.clone(),
+        listing::cause(reaction).to_string(),
         row.outside.clone().unwrap_or_default(),
         format!("{:?}", reaction.standing).to_lowercase(),
         reaction.source.clone(),
@@ -181,6 +183,7 @@ fn csv_table(chemistry: &Chemistry, asked: &Asked, rows: &[Row]) -> Table {
     let mut table = Table::new([
         "line",
         "reaction",
+        "cause",
         "coefficient",
         "unit",
         "in the state [s^-1]",
@@ -205,6 +208,7 @@ fn csv_table(chemistry: &Chemistry, asked: &Asked, rows: &[Row]) -> Table {
         table.rows.push(vec![
             reaction.line.to_string(),
             reaction.change.clone(),
+            listing::cause(reaction).to_string(),
             number(row.value),
             row.unit.to_string(),
             number(row.in_state),
