@@ -128,6 +128,9 @@ fn the_flawless_network_raises_nothing() {
     assert_eq!(findings(&[]), []);
 }
 
+/// What must be found: its kind, words of it, its line; and the edits that plant it.
+type Planted<'a> = (Kind, &'a str, usize, &'a [(&'a str, &'a str)]);
+
 // Each of these would go into a paper unnoticed.
 #[test]
 fn planted_defects_are_found() {
@@ -136,7 +139,7 @@ fn planted_defects_are_found() {
     const H_O: &str = "  - {change: H + O -> OH,";
     const H_OH: &str = "  - {change: H + OH -> O + H2,";
     const O_ION: &str = "  - {name: O+,";
-    let cases: &[(Kind, &str, usize, &[(&str, &str)])] = &[
+    let cases: &[Planted] = &[
         (
             Kind::NeverUsed,
             "no reaction contains it",
@@ -190,6 +193,15 @@ fn planted_defects_are_found() {
             &[(
                 O_H2,
                 "  - {change: OH + H -> O + H + H, at_300K: 1.0e-12, valid: [5, 300], standing: estimated, source: made_up}\n  - {change: O + H2 -> OH + H,",
+            )],
+        ),
+        (
+            Kind::LowBarrier,
+            "endothermic by 429.9 kJ/mol, with an activation energy of 83.1",
+            line_of(O_H2),
+            &[(
+                O_H2,
+                "  - {change: OH + H -> O + H + H, at_300K: 1.0e-10, barrier: 10000.0, valid: [5, 300], standing: estimated, source: made_up}\n  - {change: O + H2 -> OH + H,",
             )],
         ),
         (

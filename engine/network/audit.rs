@@ -15,6 +15,11 @@ use std::path::{Path, PathBuf};
 
 /// Mass (amu) of H2: what is heavier should take part in all of gas and ice chemistry.
 const HYDROGEN: f64 = 2.016;
+/// Heat (kJ/mol) that a barrier may leave open: enthalpies at 298 K and fitted barriers differ by
+/// less. Own choice.
+const HEAT_MARGIN: f64 = 20.0;
+/// Gas constant, kJ mol^-1 K^-1 (CODATA 2018).
+const GAS_CONSTANT: f64 = 8.314_462_618e-3;
 /// Closed-shell atoms bound to ice so weakly that they never stay on it.
 const NEVER_FREEZE: [&str; 1] = ["He"];
 
@@ -82,6 +87,7 @@ impl Network {
         gas_routes(self, &unused, &mut warnings);
         ice_partners(self, &unused, &mut warnings);
         recombination(self, &unused, &mut warnings);
+        low_barriers(self, &mut warnings);
         unused_names(self, &mut warnings);
         not_audited(self, &mut warnings);
         let of = |warning| Finding::warning(&self.path, warning);
@@ -235,6 +241,30 @@ fn recombination(network: &Network, unused: &HashSet<String>, warnings: &mut Vec
             WarningKind::NeverRecombines,
             text.to_string(),
         ));
+    }
+}
+
+/// Two-body power laws whose activation energy at 300 K, c + b T, is less than the heat they take up.
+/// Those without any barrier are the reader's to warn of.
+fn low_barriers(network: &Network, warnings: &mut Vec<Warning>) {
+    for entry in network.entries.iter().filter(|e| e.group == Group::Gas) {
+        let line = &network.file.gas[entry.index];
+        let pieces = groups::pieces(line);
+        let (Some(piece), Some(heat)) = (pieces.first(), warn::heat(network, entry)) else {
+            continue;
+        };
+        let activation = GAS_CONSTANT * (piece.barrier + 300.0 * piece.slope.max(0.0));
+        let open = heat - activation > HEAT_MARGIN;
+        if piece.barrier > 0.0 && open && line.endothermic.trim().is_empty() {
+            warnings.push(Warning {
+                line: entry.line,
+                entry: entry.change.clone(),
+                text: format!(
+                    "endothermic by {heat:.1} kJ/mol, with an activation energy of {activation:.1}"
+                ),
+                kind: WarningKind::LowBarrier,
+            });
+        }
     }
 }
 

@@ -40,6 +40,8 @@ pub enum WarningKind {
     Unused,
     /// Reactions or pairs that lack what an audit needs.
     NotAudited,
+    /// A barrier that is lower than the heat the reaction takes up.
+    LowBarrier,
     /// A coefficient that is not finite, or negative.
     NoNumber,
     /// A coefficient far beyond anything that happens in a gas.
@@ -75,6 +77,7 @@ impl WarningKind {
             WarningKind::NeverFormedInGas
             | WarningKind::NoIce
             | WarningKind::Unused
+            | WarningKind::LowBarrier
             | WarningKind::NotAudited => Severity::Remark,
             _ => Severity::Warning,
         }
@@ -101,6 +104,9 @@ impl WarningKind {
             WarningKind::NeverUsed => "it is carried along for nothing, or a reaction is missing",
             WarningKind::Unused => "a reference is misspelt, or this is a leftover",
             WarningKind::NotAudited => "an impossible number there would not be noticed",
+            WarningKind::LowBarrier => {
+                "its reverse would speed up without bound on cooling; barrier or enthalpies are off"
+            }
             WarningKind::NoNumber => "every abundance would become nonsense",
             WarningKind::Runaway => {
                 "the formula is used too far outside its range; limit it with `below: hold`"

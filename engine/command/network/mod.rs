@@ -15,7 +15,7 @@ pub enum Verb {
     /// Audit a network: what is wrong, doubtful or missing, and why it matters
     Check(check::Arguments),
     /// List all reactions with their coefficients in given conditions
-    Show(show::Arguments),
+    Show(Box<show::Arguments>),
     /// Say what differs between two networks
     Compare(compare::Arguments),
 }
