@@ -176,7 +176,7 @@ fn beside(case: &Path, name: &str) -> PathBuf {
 }
 
 /// What a user did wrong if a named file cannot be read, or None if the machine failed.
-fn unreadable(error: &io::Error) -> Option<&'static str> {
+pub(crate) fn unreadable(error: &io::Error) -> Option<&'static str> {
     match error.kind() {
         io::ErrorKind::NotFound => Some("no such file"),
         io::ErrorKind::IsADirectory => Some("a folder"),

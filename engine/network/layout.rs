@@ -160,6 +160,9 @@ pub struct GasLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,
@@ -181,6 +184,9 @@ pub struct CaptureLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,
@@ -213,6 +219,9 @@ pub struct FalloffLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,

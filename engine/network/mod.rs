@@ -3,7 +3,10 @@
 //!
 //! It never evaluates the rate of a run: `rates` does.
 
+pub mod audit;
 mod check;
+mod collisions;
+pub mod compare;
 pub mod expand;
 pub mod findings;
 pub mod groups;
@@ -16,7 +19,7 @@ pub mod roster;
 mod warn;
 
 pub use expand::expand;
-pub use findings::{Warning, WarningKind};
+pub use findings::{Severity, Warning, WarningKind};
 pub use read::{Network, read};
 
 #[cfg(test)]
