@@ -37,6 +37,8 @@ pub struct Case {
     /// Where the network file lies, unless built in.
     pub network_path: Option<PathBuf>,
     pub network_text: String,
+    /// Of the polynomials the network names; empty if it names none.
+    pub thermo_text: String,
     pub grains: GrainOptions,
     /// Turbulent line width, cm s^-1.
     pub turbulence: f64,
@@ -130,6 +132,7 @@ pub fn read(path: &Path, text: &str, files: Files) -> Result<Case, Failure> {
         network_name: network.name,
         network_path: network.path,
         network_text: network.text,
+        thermo_text: network.thermo,
         grains: grains.value,
         turbulence: gas.value.0,
         colliders: gas.value.1,
@@ -241,6 +244,7 @@ impl Case {
             self.resolved.as_bytes(),
             self.network_text.as_bytes(),
             &cells,
+            self.thermo_text.as_bytes(),
         ] {
             // With its length, so that no part can pass for the end of the one before.
             hash.update((part.len() as u64).to_le_bytes());

@@ -14,6 +14,8 @@ pub struct NetworkFile {
     pub layout: u32,
     #[serde(default)]
     pub about: String,
+    /// Polynomials for reversible reactions: a built-in name or a path beside this file.
+    pub thermo: Option<String>,
     /// Citation by key.
     pub sources: BTreeMap<String, String>,
     /// Meaning of each radiation spectrum by name; `draine` is always known.
@@ -160,6 +162,9 @@ pub struct GasLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Whether the reverse runs too, by the equilibrium constant.
+    #[serde(default)]
+    pub reversible: bool,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,
@@ -213,6 +218,9 @@ pub struct FalloffLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Whether the reverse runs too, by the equilibrium constant.
+    #[serde(default)]
+    pub reversible: bool,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,

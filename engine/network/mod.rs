@@ -4,6 +4,7 @@
 //! It never evaluates the rate of a run: `rates` does.
 
 mod check;
+pub mod equilibrium;
 pub mod expand;
 pub mod findings;
 pub mod groups;
@@ -13,11 +14,12 @@ pub mod model;
 pub mod names;
 pub mod read;
 pub mod roster;
+pub mod thermo;
 mod warn;
 
 pub use expand::expand;
 pub use findings::{Warning, WarningKind};
-pub use read::{Network, read};
+pub use read::{Network, read, read_with};
 
 #[cfg(test)]
 mod tests;
