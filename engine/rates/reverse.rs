@@ -60,3 +60,86 @@ impl Reverse {
         log.min(LARGEST_LOG).exp()
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::network::layout::Below;
+    use crate::network::model::Piece;
+
+    fn power(barrier: f64) -> Cause {
+        Cause::PowerLaw {
+            pieces: vec![Piece {
+                at_300k: 1e-10,
+                slope: 0.0,
+                barrier,
+                valid: [5.0, 4000.0],
+            }],
+            below: Below::Extend,
+        }
+    }
+
+    /// Fails if a reverse is computed from numbers that a cold cell makes 0 or infinite.
+    #[test]
+    fn cold_reverses_neither_overflow_nor_lose_their_value() {
+        let cell = |log_constant| Reverse {
+            log_constant,
+            order: 2,
+            t: 10.0,
+            n_h: 1e6,
+        };
+        let k = |log_constant, barrier| {
+            cell(log_constant).coefficient(&power(barrier), &mut Vec::new())
+        };
+        // Strongly exothermic forward: no reverse.
+        assert_eq!(k(3e4, 0.0), 0.0);
+        // Forward and constant both vanish at 10 K, their ratio does not: exp(-1000)/exp(-990).
+        assert!((k(-990.0, 1e4) / (1e-10 * 1e6 * f64::exp(-10.0)) - 1.0).abs() < 1e-9);
+        // Impossible, but a number.
+        assert!(k(-1e5, 0.0).is_finite());
+        // No forward, no reverse.
+        let none = Cause::PowerLaw {
+            pieces: Vec::new(),
+            below: Below::Zero,
+        };
+        assert_eq!(cell(-1e5).coefficient(&none, &mut Vec::new()), 0.0);
+    }
+
+    /// Fails if the third body or a power of n_H goes astray: k_f = 1, K_c = e.
+    #[test]
+    fn powers_of_density_follow_what_the_reverse_takes() {
+        let one = |order| Reverse {
+            log_constant: 1.0,
+            order,
+            t: 300.0,
+            n_h: 10.0,
+        };
+        let pieces = vec![Piece {
+            at_300k: 1.0,
+            slope: 0.0,
+            barrier: 0.0,
+            valid: [5.0, 400.0],
+        }];
+        let below = Below::Extend;
+        let third = Cause::ThirdBody { pieces, below };
+        let near = |found: f64, power: i32| {
+            let expected = 10f64.powi(power) / std::f64::consts::E;
+            assert!((found / expected - 1.0).abs() < 1e-12, "{found}, {power}");
+        };
+        near(one(2).coefficient(&third, &mut Vec::new()), 2);
+        let falloff = Cause::Falloff {
+            low: [1.0, 0.0, 0.0],
+            high: [1.0, 0.0, 0.0],
+            centre: 0.1,
+            range: Range {
+                valid: [5.0, 400.0],
+                below,
+            },
+        };
+        let mut limits = Vec::new();
+        assert_eq!(one(1).coefficient(&falloff, &mut limits), 1.0);
+        near(limits[0].low, 1);
+        near(limits[0].high, 0);
+        assert_eq!(limits[0].log_centre, -1.0);
+    }
+}

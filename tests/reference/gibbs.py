@@ -4,7 +4,7 @@
 
 Takes elements, temperature and density from the run, polynomials from networks/thermo.yaml, and nothing from any
 coefficient. At given volume n_i = (p0/kT) exp(-G_i/RT + sum of a_ij pi_j); the element potentials pi_j are
-found with SciPy so that the elements add up. Exit status 0: every species above 1e-8 agrees within 1 percent in every cell, 1: not.
+found with SciPy so that the elements add up. Exit status 0: every species above 1e-8 (in either) agrees within 1 percent in every cell, 1: not.
 """
 
 import argparse
@@ -75,7 +75,7 @@ def check(path):
             for element, atoms in names.composition(s).items():
                 totals[element] = totals.get(element, 0.0) + atoms * x
         aim = minimum(table, species, totals, t, n_h)
-        main = aim > FLOOR
+        main = np.maximum(aim, abundance[cell, -1]) > FLOOR
         off = np.abs(abundance[cell, -1] / aim - 1.0)
         moved = np.abs(abundance[cell, 0] / aim - 1.0)[main].max()
         worst = int(np.argmax(np.where(main, off, 0.0)))
