@@ -71,7 +71,7 @@ class Context:
         densities = (len(reaction.consumed) - len(reaction.products)) * log(cell.n_h)
 
         def over_constant(k):
-            return exp(log(k) - log_constant + densities) if k > 0.0 else 0.0
+            return exp(min(log(k) - log_constant + densities, 690.0)) if k > 0.0 else 0.0
 
         forward = getattr(self, "_" + reaction.extra["forward"])(reaction, line)
         if forward.low is None:
