@@ -36,6 +36,8 @@ pub struct Case {
     /// Where the network file lies, unless built in.
     pub network_path: Option<PathBuf>,
     pub network_text: String,
+    /// Of the polynomials the network names; empty if it names none.
+    pub thermo_text: String,
     pub grains: GrainOptions,
     /// Turbulent line width, cm s^-1.
     pub turbulence: f64,
@@ -129,6 +131,7 @@ pub fn read(path: &Path, text: &str, files: Files) -> Result<Case, Failure> {
         network_name: network.name,
         network_path: network.path,
         network_text: network.text,
+        thermo_text: network.thermo,
         grains: grains.value,
         turbulence: gas.value.0,
         colliders: gas.value.1,

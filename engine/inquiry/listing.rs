@@ -194,7 +194,7 @@ pub(super) fn values(chemistry: &Chemistry, asked: &Asked, conditions: &Conditio
     };
     let mut falloffs = rates.coefficients.falloff.iter();
     (chemistry.reactions.iter().zip(rates.coefficients.k))
-        .map(|(reaction, k)| match reaction.cause {
+        .map(|(reaction, k)| match law(&reaction.cause) {
             Cause::Falloff { .. } => falloffs
                 .next()
                 .map_or(0.0, |law| k * factor::falloff(law, colliders).value),
@@ -210,9 +210,19 @@ const THREE_BODY: &str = "cm^6 s^-1";
 const PER_LAYER: &str = "s^-1 per layer";
 const UNITS: [&str; 4] = [TWO_BODY, THREE_BODY, PER_S, PER_LAYER];
 
+/// The law that a cause follows in its density: a reverse reaction follows its forward's.
+fn law(cause: &Cause) -> &Cause {
+    match cause {
+        Cause::Reverse { forward, .. } => forward,
+        own => own,
+    }
+}
+
 /// What turns the coefficient of the state into the usual one, and the unit of that.
 fn natural(chemistry: &Chemistry, reaction: &Reaction, c: &Conditions) -> (f64, &'static str) {
-    match (&reaction.cause, reaction.reactants.len()) {
+    match (law(&reaction.cause), reaction.reactants.len()) {
+        // Two partners that join while M takes the energy: the reverse of a break-up.
+        (Cause::ThirdBody { .. }, 2) => (1.0 / (c.n_h * c.n_h), THREE_BODY),
         (Cause::Surface { .. }, _) => (c.sites(chemistry.options.site_density), PER_LAYER),
         // The partner M, and the grain that H meets, are not in the rate law.
         (Cause::ThirdBody { .. } | Cause::HydrogenFormation { .. }, _) | (_, 2) => {
@@ -231,6 +241,7 @@ pub fn cause(reaction: &Reaction) -> &'static str {
         Cause::ThirdBody { .. } => "third body",
         Cause::Capture { .. } => "capture",
         Cause::Falloff { .. } => "falloff",
+        Cause::Reverse { .. } => "reverse",
         Cause::Light { .. } => "light",
         Cause::Ionisation { .. } => "ionising particles",
         Cause::SecondaryLight { .. } => "secondary light",

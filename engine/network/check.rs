@@ -4,9 +4,11 @@
 
 mod lists;
 mod numbers;
+mod reversible;
 mod solids;
 
 pub(super) use lists::STANDARD_SPECTRUM;
+pub(super) use reversible::{improbable_reverses, reversible};
 
 use super::findings::Findings;
 use super::groups::{self, Group, Head};

@@ -5,10 +5,11 @@
 //! documented in networks/README.md.
 
 mod grains;
+mod reverse;
 mod written;
 
 use super::check::STANDARD_SPECTRUM;
-use super::groups::Group;
+use super::groups::{self, Group};
 use super::layout::Standing;
 use super::model::{
     Cause, Chemistry, GrainOptions, Phase, Reaction, Shielding, Species, SpeciesId,
@@ -53,6 +54,9 @@ pub fn expand(network: &Network, options: &GrainOptions) -> Result<Chemistry, Ve
     for entry in &network.entries {
         if entry.group != Group::Surface {
             expansion.written(entry);
+            if groups::reversible(&network.file, entry.group, entry.index) {
+                expansion.reverse(entry);
+            }
         }
     }
     expansion.hydrogen_formation();

@@ -102,6 +102,18 @@ pub fn power_laws(file: &NetworkFile) -> impl Iterator<Item = (Group, usize, &Ga
     })
 }
 
+/// Whether a line declares that its reverse runs too.
+pub fn reversible(file: &NetworkFile, group: Group, index: usize) -> bool {
+    let of = |lines: &[GasLine]| lines.get(index).is_some_and(|line| line.reversible);
+    match group {
+        Group::Gas => of(&file.gas),
+        Group::ThreeBody => of(&file.three_body),
+        Group::ThirdBody => of(&file.third_body),
+        Group::Falloff => file.falloff.get(index).is_some_and(|line| line.reversible),
+        Group::Capture | Group::Light | Group::Cosmic | Group::Surface => false,
+    }
+}
+
 /// The temperature pieces of a power-law line; a line without `pieces` is one piece.
 /// Empty where the line has neither form.
 pub fn pieces(line: &GasLine) -> Vec<Piece> {

@@ -14,6 +14,8 @@ pub struct NetworkFile {
     pub layout: u32,
     #[serde(default)]
     pub about: String,
+    /// Polynomials for reversible reactions: a built-in name or a path beside this file.
+    pub thermo: Option<String>,
     /// Citation by key.
     pub sources: BTreeMap<String, String>,
     /// Meaning of each radiation spectrum by name; `draine` is always known.
@@ -163,6 +165,9 @@ pub struct GasLine {
     /// Why the reaction may be endothermic and still need no barrier.
     #[serde(default)]
     pub endothermic: String,
+    /// Whether the reverse runs too, by the equilibrium constant.
+    #[serde(default)]
+    pub reversible: bool,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,
@@ -222,6 +227,9 @@ pub struct FalloffLine {
     /// Why the reaction may be endothermic and still need no barrier.
     #[serde(default)]
     pub endothermic: String,
+    /// Whether the reverse runs too, by the equilibrium constant.
+    #[serde(default)]
+    pub reversible: bool,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,

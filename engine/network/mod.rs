@@ -7,6 +7,7 @@ pub mod audit;
 mod check;
 mod collisions;
 pub mod compare;
+pub mod equilibrium;
 pub mod expand;
 pub mod findings;
 pub mod groups;
@@ -16,11 +17,12 @@ pub mod model;
 pub mod names;
 pub mod read;
 pub mod roster;
+pub mod thermo;
 mod warn;
 
 pub use expand::expand;
 pub use findings::{Severity, Warning, WarningKind};
-pub use read::{Network, read};
+pub use read::{Network, read, read_with};
 
 #[cfg(test)]
 mod tests;

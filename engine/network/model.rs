@@ -43,6 +43,17 @@ pub struct Piece {
     pub valid: [f64; 2],
 }
 
+/// Nine coefficients of Cp, H and S on `valid` (K), of a species or summed over a reaction; see
+/// `equilibrium`.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Polynomial {
+    pub valid: [f64; 2],
+    /// a1 to a7.
+    pub a: [f64; 7],
+    /// b1 (K) and b2.
+    pub b: [f64; 2],
+}
+
 /// A validity range in T_gas and the rule below it (above it the value is held).
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Range {
@@ -90,6 +101,16 @@ pub enum Cause {
         high: [f64; 3],
         centre: f64,
         range: Range,
+    },
+    /// The reverse of a collision: its coefficient over the equilibrium constant, with the same
+    /// third bodies.
+    Reverse {
+        /// `PowerLaw`, `ThirdBody` or `Falloff`.
+        forward: Box<Cause>,
+        /// How many particles the forward reaction gains.
+        gained: i32,
+        /// The forward reaction's products less its reactants.
+        polynomials: Vec<Polynomial>,
     },
     /// Photoprocess. `rates`: one per [`Chemistry::spectra`], None where the file gives none.
     Light {
@@ -170,7 +191,8 @@ pub struct Reaction {
     pub cause: Cause,
     /// Line of the network file it comes from (1-based).
     pub line: usize,
-    /// Reactions of one group share one uncertainty (channels of a reactant pair, pieces).
+    /// Reactions of one group share one uncertainty (channels of a reactant pair, pieces, the
+    /// reverse of a reversible reaction).
     pub group: usize,
     /// Multiplicative 1-sigma uncertainty.
     pub within: f64,

@@ -8,6 +8,7 @@ use super::groups::{self, Group, Head};
 use super::layout::NetworkFile;
 use super::names;
 use super::roster::Roster;
+use super::thermo::{self, Thermo};
 use super::warn;
 use crate::errors::InputError;
 use crate::yaml::{self, Positions};
@@ -25,6 +26,8 @@ pub struct Network {
     pub file: NetworkFile,
     pub positions: Positions,
     pub roster: Roster,
+    /// The polynomials the file names; empty if it names none.
+    pub thermo: Thermo,
     /// All reaction lines in the order of expansion.
     pub entries: Vec<Entry>,
     /// Products of photodesorption: per ice line, per channel, places in the roster.
@@ -73,7 +76,17 @@ fn sorted(places: &[usize]) -> Vec<usize> {
 }
 
 /// Reads and checks a network from the text of the file `path`; reports all errors it can find.
+/// Polynomials that are not built in are read from the disk.
 pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
+    read_with(path, text, None)
+}
+
+/// The same, with the text of the polynomials that the network names, where it is known already.
+pub fn read_with(
+    path: &Path,
+    text: &str,
+    polynomials: Option<&str>,
+) -> Result<Network, Vec<InputError>> {
     let positions = yaml::positions(path, text).map_err(|error| vec![error])?;
     check_layout(path, &positions)?;
     let file: NetworkFile =
@@ -84,6 +97,11 @@ pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
     let photodesorption = photodesorption(&file, &roster, &mut findings);
     let neutralisation = neutralisation(&file, &roster, &mut findings);
     check::all(&file, &roster, &entries, &mut findings);
+    let thermo = match &file.thermo {
+        Some(name) => polynomials_of(path, name, polynomials, &mut findings)?,
+        None => Thermo::default(),
+    };
+    check::reversible(&file, &roster, &entries, &thermo, &mut findings);
     if !findings.none() {
         return Err(findings.finish());
     }
@@ -93,12 +111,15 @@ pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
         file,
         positions,
         roster,
+        thermo,
         entries,
         photodesorption,
         neutralisation,
         warnings: Vec::new(),
     };
     network.warnings = warn::all(&network);
+    (network.warnings).extend(check::improbable_reverses(&network));
+    network.warnings.sort_by_key(|warning| warning.line);
     Ok(network)
 }
 
@@ -119,6 +140,34 @@ fn check_layout(path: &Path, positions: &Positions) -> Result<(), Vec<InputError
             Err(vec![InputError::new(path, line, "layout", found, expected)])
         }
         _ => Ok(()),
+    }
+}
+
+/// The polynomials called `name` in the network at `network`. What is wrong inside of them is
+/// reported at once, with their own lines.
+fn polynomials_of(
+    network: &Path,
+    name: &str,
+    text: Option<&str>,
+    findings: &mut Findings,
+) -> Result<Thermo, Vec<InputError>> {
+    let path = thermo::place(network, name);
+    let text = match (text, thermo::built_in(name)) {
+        (Some(text), _) | (None, Some(text)) => Ok(text.to_string()),
+        (None, None) => match thermo::known(name) {
+            Err(expected) => Err((format!("`{name}`"), expected)),
+            Ok(()) => std::fs::read_to_string(&path).map_err(|error| {
+                let found = format!("{} at {}", error, path.display());
+                (found, "a readable file of polynomials".to_string())
+            }),
+        },
+    };
+    match text {
+        Ok(text) => thermo::read(&path, &text),
+        Err((found, expected)) => {
+            findings.add("thermo", "thermo", found, expected);
+            Ok(Thermo::default())
+        }
     }
 }
 

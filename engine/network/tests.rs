@@ -2,6 +2,7 @@
 
 mod errors;
 mod expansion;
+mod reversible;
 mod warnings;
 
 use super::model::{Chemistry, GrainOptions};

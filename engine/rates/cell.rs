@@ -1,10 +1,12 @@
 //! Owns the evaluation of all coefficients of a network in one cell, in units of the state
 //! (abundances per hydrogen nucleus, s^-1), and the count of uses outside a law's range.
 
+use super::reverse::Reverse;
 use super::two_body::{self, Place, power_law};
 use super::{dust, ice, light, shielding, surface};
 use crate::disk::conditions::{Conditions, FieldKind, Light};
 use crate::kinetics::{Coefficients, Falloff};
+use crate::network::equilibrium::{Reach, log_constant};
 use crate::network::model::{Cause, Chemistry, Range};
 
 /// What the counts of [`Cautions`] mean, in their order.
@@ -182,6 +184,25 @@ impl<'a> Cell<'a> {
                     log_centre: centre.log10(),
                 });
                 1.0
+            }
+            Cause::Reverse {
+                forward,
+                gained,
+                polynomials,
+            } => {
+                let (log_constant, reach) = log_constant(polynomials, *gained, c.t_gas);
+                self.count(match reach {
+                    Reach::Inside => Place::Inside,
+                    Reach::Below => Place::Below,
+                    Reach::Above => Place::Above,
+                });
+                let reverse = Reverse {
+                    log_constant,
+                    order,
+                    t: c.t_gas,
+                    n_h,
+                };
+                reverse.coefficient(forward, falloff)
             }
             Cause::Light {
                 rates,

@@ -8,6 +8,7 @@ mod cell;
 pub mod dust;
 pub mod ice;
 pub mod light;
+mod reverse;
 pub mod shielding;
 mod steps;
 pub mod surface;

@@ -16,22 +16,26 @@ pub fn mechanism(chemistry: &Chemistry) -> Result<Mechanism, MechanismError> {
         .position(|s| s.phase == Phase::IceTotal);
     let options = &chemistry.options;
     let mut falloffs = 0;
+    let mut factor_of_collision = |cause: &Cause| match cause {
+        Cause::ThirdBody { .. } => Factor::Colliders,
+        Cause::Falloff { .. } => {
+            falloffs += 1;
+            Factor::Falloff(falloffs - 1)
+        }
+        _ => Factor::One,
+    };
     let steps = chemistry
         .reactions
         .iter()
         .map(|reaction| {
             let factor = match &reaction.cause {
-                Cause::ThirdBody { .. } => Factor::Colliders,
-                Cause::Falloff { .. } => {
-                    falloffs += 1;
-                    Factor::Falloff(falloffs - 1)
-                }
+                Cause::Reverse { forward, .. } => factor_of_collision(forward),
                 Cause::ThermalDesorption { .. } | Cause::CosmicDesorption { .. } => {
                     Factor::TopLayers(options.desorbing_layers)
                 }
                 Cause::Photodesorption { .. } => Factor::TopLayers(options.lit_layers),
                 Cause::Surface { .. } => Factor::Encounters(options.active_layers),
-                _ => Factor::One,
+                other => factor_of_collision(other),
             };
             Step {
                 order: reaction.reactants.clone(),

@@ -19,6 +19,11 @@ pub fn power_law(a: f64, b: f64, c: f64, t: f64) -> f64 {
     a * (t / 300.0).powf(b) * (-c / t).exp()
 }
 
+/// ln of [`power_law`], minus infinity where `a` is 0.
+pub fn log_power_law(a: f64, b: f64, c: f64, t: f64) -> f64 {
+    a.ln() + b * (t / 300.0).ln() - c / t
+}
+
 /// The temperature at which a law valid on `range` is evaluated for gas at `t` (K), or None where
 /// the rule says the reaction does not happen; with the place of `t` relative to the range.
 /// Above the range the value is held.
@@ -41,8 +46,23 @@ pub fn evaluation_temperature(range: Range, t: f64) -> (Option<f64>, Place) {
 /// A power law in pieces that ascend and abut: the first piece whose upper end is not below `t`
 /// counts; `below` belongs to the lowest, above the highest the value is held.
 pub fn pieces(pieces: &[Piece], below: Below, t: f64) -> (f64, Place) {
+    let (chosen, place) = choose(pieces, below, t);
+    let k = chosen.map_or(0.0, |(p, at)| power_law(p.at_300k, p.slope, p.barrier, at));
+    (k, place)
+}
+
+/// The natural logarithm of [`pieces`], minus infinity for 0.
+pub fn log_pieces(pieces: &[Piece], below: Below, t: f64) -> f64 {
+    let (chosen, _) = choose(pieces, below, t);
+    chosen.map_or(f64::NEG_INFINITY, |(p, at)| {
+        log_power_law(p.at_300k, p.slope, p.barrier, at)
+    })
+}
+
+/// The piece that counts and the temperature at which it does.
+fn choose(pieces: &[Piece], below: Below, t: f64) -> (Option<(&Piece, f64)>, Place) {
     let Some(last) = pieces.last() else {
-        return (0.0, Place::Inside);
+        return (None, Place::Inside);
     };
     let piece = pieces.iter().find(|p| t <= p.valid[1]).unwrap_or(last);
     // Only the lowest piece can have `t` below its range: the others abut.
@@ -53,10 +73,7 @@ pub fn pieces(pieces: &[Piece], below: Below, t: f64) -> (f64, Place) {
         },
         t,
     );
-    let k = at.map_or(0.0, |t| {
-        power_law(piece.at_300k, piece.slope, piece.barrier, t)
-    });
-    (k, place)
+    (at.map(|at| (piece, at)), place)
 }
 
 /// Ion-dipole capture coefficient (Su & Chesnavich 1982, J. Chem. Phys. 76, 5183), in the unit of

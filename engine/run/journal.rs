@@ -22,7 +22,7 @@ use crate::store::header::RunHeader;
 /// The first bytes of a journal.
 pub const MAGIC: &[u8; 8] = b"frstjrnl";
 /// Raised whenever the meaning of any byte changes.
-const FORMAT: u32 = 1;
+const FORMAT: u32 = 2;
 const PREAMBLE: usize = MAGIC.len() + 4;
 const KIND_HEADER: u8 = 1;
 const KIND_CELL: u8 = 2;

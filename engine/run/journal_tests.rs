@@ -189,7 +189,7 @@ fn other_inputs_are_refused_with_what_differs_and_starting_over_takes_them() {
         change(&mut header);
         header
     };
-    let cases: [(&str, RunHeader); 7] = [
+    let cases: [(&str, RunHeader); 8] = [
         (
             "line 3: found `clock: {until: 3 Myr}`, expected `clock: {until: 2 Myr}`",
             { other(&|h| h.case_text = h.case_text.replace("3 Myr", "2 Myr")) },
@@ -201,6 +201,10 @@ fn other_inputs_are_refused_with_what_differs_and_starting_over_takes_them() {
         (
             "network text, line 2",
             other(&|h| h.network_text = h.network_text.replace("layout: 1", "layout: 1 #")),
+        ),
+        (
+            "polynomials, line 1",
+            other(&|h| h.thermo_text = h.thermo_text.replace("small", "large")),
         ),
         (
             "engine version: found `0.1.0`",

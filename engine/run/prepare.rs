@@ -42,7 +42,9 @@ impl Prepared {
     /// [`Failure::Input`] for anything wrong in the network, the start or the fields.
     pub fn new(case: &Case) -> Result<Self, Failure> {
         let path = network_path(case);
-        let network = network::read(&path, &case.network_text).map_err(Failure::Input)?;
+        let polynomials = Some(case.thermo_text.as_str()).filter(|text| !text.is_empty());
+        let network =
+            network::read_with(&path, &case.network_text, polynomials).map_err(Failure::Input)?;
         let chemistry = network::expand(&network, &case.grains).map_err(Failure::Input)?;
         let mechanism = rates::mechanism(&chemistry).map_err(|error| {
             let found = error.to_string();
@@ -64,6 +66,7 @@ impl Prepared {
             kernel: kernel_name(),
             case_text: case.resolved.clone(),
             network_text: case.network_text.clone(),
+            thermo_text: case.thermo_text.clone(),
             species: chemistry.species.iter().map(SpeciesInfo::from).collect(),
             times_yr: case.snapshots.iter().map(|t| t / YEAR).collect(),
             tolerances: Tolerances {

@@ -44,6 +44,9 @@ pub(super) fn differences(path: &Path, then: &RunHeader, now: &RunHeader) -> Vec
     if let Some((line, then, now)) = differing_lines(&then.network_text, &now.network_text).next() {
         found.push(differs(format!("network text, line {line}"), then, now));
     }
+    if let Some((line, then, now)) = differing_lines(&then.thermo_text, &now.thermo_text).next() {
+        found.push(differs(format!("polynomials, line {line}"), then, now));
+    }
     // Compared by their bytes, as the hash is: the cells of a table may differ in the last bit.
     if found.is_empty() && then.input_hash() != now.input_hash() {
         let cell = then

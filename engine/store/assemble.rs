@@ -63,7 +63,10 @@ fn expected_size(header: &RunHeader, [cells, times, species]: [usize; 3]) -> u64
     let fields = header.disk.fields.len() * (2 + 2 * header.disk.column_species.len());
     let per_cell = 8 * (times * (species + 4) + CELL_NUMBERS.len() + fields + 16)
         + 4 * header.caution_names.len();
-    let texts = header.case_text.len() + header.network_text.len() + 256 * species;
+    let texts = header.case_text.len()
+        + header.network_text.len()
+        + header.thermo_text.len()
+        + 256 * species;
     (cells * per_cell + texts) as u64
 }
 

@@ -70,6 +70,8 @@ pub struct RunHeader {
     /// The case with its defaults filled in.
     pub case_text: String,
     pub network_text: String,
+    /// The polynomials of reversible reactions; empty if the network names none.
+    pub thermo_text: String,
     pub species: Vec<SpeciesInfo>,
     /// Snapshot times, yr.
     pub times_yr: Vec<f64>,
@@ -82,13 +84,14 @@ pub struct RunHeader {
 }
 
 impl RunHeader {
-    /// SHA-256, in hexadecimal, of the resolved inputs: case, network, and every condition of every
+    /// SHA-256, in hexadecimal, of the resolved inputs: case, network, polynomials, and every condition of every
     /// cell (a table may change while the case that names it does not).
     pub fn input_hash(&self) -> String {
         let mut inputs = Encoder::default();
         inputs.text(&self.case_text);
         inputs.text(&self.network_text);
         encode_disk(&mut inputs, &self.disk);
+        inputs.text(&self.thermo_text);
         Sha256::digest(inputs.finish())
             .iter()
             .map(|byte| format!("{byte:02x}"))
@@ -119,6 +122,7 @@ impl RunHeader {
         out.text(&self.kernel);
         out.text(&self.case_text);
         out.text(&self.network_text);
+        out.text(&self.thermo_text);
         out.count(self.species.len());
         for species in &self.species {
             out.text(&species.name);
@@ -149,6 +153,7 @@ impl RunHeader {
             kernel: from.text("the kernel")?,
             case_text: from.text("the case")?,
             network_text: from.text("the network")?,
+            thermo_text: from.text("the polynomials")?,
             species: decode_species(&mut from)?,
             times_yr: from.f64s("the snapshot times")?,
             tolerances: Tolerances {

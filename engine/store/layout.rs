@@ -364,6 +364,15 @@ impl<'a> Writer<'a> {
         let network = label("network", "", "the network file (YAML)");
         self.putter
             .texts(&group, network, None, &[&header.network_text])?;
+        if !header.thermo_text.is_empty() {
+            let thermo = label(
+                "thermo",
+                "",
+                "the polynomials of reversible reactions (YAML)",
+            );
+            self.putter
+                .texts(&group, thermo, None, &[&header.thermo_text])?;
+        }
         let note = label("note", "", "remark made while reading the inputs");
         self.putter.text_scale(&group, note, &header.notes)?;
         let fields = &header.disk.fields;

@@ -279,6 +279,10 @@ fn read_header(file: &File, provenance: &Group) -> hdf5::Result<RunHeader> {
         kernel: text_attribute(provenance, "kernel")?,
         case_text: text(provenance, "case")?,
         network_text: text(provenance, "network")?,
+        thermo_text: match provenance.link_exists("thermo") {
+            true => text(provenance, "thermo")?,
+            false => String::new(),
+        },
         species: read_species(file)?,
         times_yr: numbers(file, "time")?,
         tolerances: Tolerances {

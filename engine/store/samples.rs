@@ -61,6 +61,7 @@ pub(crate) fn header(cells: usize) -> RunHeader {
         kernel: "scalar".to_string(),
         case_text: "title: Tirune\nnetwork: small\nclock: {until: 3 Myr}\n\u{3b6}: 1\n".to_string(),
         network_text: "network: small\nlayout: 1\n".to_string(),
+        thermo_text: "thermo: small\nlayout: 1\n".to_string(),
         species: vec![
             info("H2", Phase::Gas, 0, 2.016, &[("H", 2)]),
             info(

@@ -4,9 +4,9 @@ Joins the lines of the network and the conditions of a cell to the laws in `rate
 """
 
 from dataclasses import dataclass
-from math import log10
+from math import exp, log, log10
 
-from . import names, rates
+from . import names, rates, thermo
 
 
 @dataclass
@@ -63,6 +63,20 @@ class Context:
         low, high = (rates.power_law(at, p["at_300K"], p.get("slope") or 0.0, p.get("barrier") or 0.0)
                      for p in (line["low"], line["high"]))
         return Coefficient(1.0, low * self.cell.n_h**2, high * self.cell.n_h, log10(line["centre"]))
+
+    def _reverse(self, reaction, line):
+        """The forward coefficient over the equilibrium constant; every third body stays."""
+        cell = self.cell
+        log_constant = thermo.log_constant(self.network.thermo, reaction.products, reaction.consumed, cell.t_gas)
+        densities = (len(reaction.consumed) - len(reaction.products)) * log(cell.n_h)
+
+        def over_constant(k):
+            return exp(min(log(k) - log_constant + densities, 690.0)) if k > 0.0 else 0.0
+
+        forward = getattr(self, "_" + reaction.extra["forward"])(reaction, line)
+        if forward.low is None:
+            return Coefficient(over_constant(forward.value))
+        return Coefficient(1.0, over_constant(forward.low), over_constant(forward.high), forward.log_centre)
 
     # light and particles
 

@@ -9,7 +9,9 @@ from pathlib import Path
 from ruamel.yaml import YAML
 
 from . import names
+from .thermo import read_thermo
 
+REPOSITORY = Path(__file__).resolve().parents[2]
 GAS_GROUPS = ("gas", "capture", "falloff", "three_body", "third_body", "light", "cosmic")
 
 
@@ -43,6 +45,7 @@ class Network:
     reactions: list
     raw: dict
     charge_states: int
+    thermo: dict = field(default_factory=dict)  # polynomials by species
 
     @property
     def species(self):
@@ -68,10 +71,10 @@ def read_network(path, leaving_share=0.01, charge_states=1):
     raw = read_yaml(path)
     if raw["layout"] != 1:
         raise ValueError(f"{path}: layout {raw['layout']} is not known here")
-    return expand(raw, leaving_share, charge_states)
+    return expand(raw, leaving_share, charge_states, Path(path).parent)
 
 
-def expand(raw, leaving_share=0.01, charge_states=1):
+def expand(raw, leaving_share=0.01, charge_states=1, folder=Path()):
     gas = [line["name"] for line in raw["species"]]
     ices = raw.get("ices") or []
     reactions = []
@@ -79,6 +82,8 @@ def expand(raw, leaving_share=0.01, charge_states=1):
         for line in raw.get(group) or []:
             consumed, products = names.parse_change(line["change"])
             reactions.append(Reaction(group, consumed, products, line, list(consumed)))
+            if line.get("reversible", False):  # right behind its forward reaction
+                reactions.append(Reaction("reverse", products, consumed, line, list(products), {"forward": group}))
     dust = raw.get("dust") or {}
     reactions += _hydrogen_formation(dust) + _charging(dust, charge_states)
     for line in ices:
@@ -86,6 +91,9 @@ def expand(raw, leaving_share=0.01, charge_states=1):
     for line in raw.get("surface") or []:
         reactions += _surface(line, leaving_share)
     network = Network(gas, ices, reactions, raw, charge_states)
+    if "thermo" in raw:
+        built_in = raw["thermo"] == "standard"
+        network.thermo = read_thermo(REPOSITORY / "networks/thermo.yaml" if built_in else folder / raw["thermo"])
     _check(network)
     return network
 

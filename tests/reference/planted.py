@@ -11,7 +11,7 @@ import contextlib
 import copy
 import csv
 import sys
-from math import e, exp, log10, pi, sqrt
+from math import e, exp, log, log10, pi, sqrt
 
 from . import check, names, rates, system
 from .cells import read_case
@@ -70,6 +70,10 @@ IN_FUNCTIONS = {
     "capture without the square root": (rates, "capture", lambda t, k, x: _was(rates, "capture")(t, k, x * sqrt(300.0 / t))),
     "capture by its lower branch": (rates, "capture", _capture_low_branch_only),
     "capture by its upper branch": (rates, "capture", _capture_high_branch_only),
+    "reverse over the inverse of the constant": (rates, "log_equilibrium", lambda t, h, s, n: -_was(rates, "log_equilibrium")(t, h, s, n)),
+    "standard pressure of one atmosphere": (rates, "log_equilibrium", lambda t, h, s, n: _was(rates, "log_equilibrium")(t, h, s, n) + n * log(1.01325)),
+    "constant of pressures, not of densities": (rates, "log_equilibrium", lambda t, h, s, n: s - h / t),
+    "entropy without its second constant": (rates, "entropy", lambda t, a, b: _was(rates, "entropy")(t, a, [b[0], 0.0])),
     "extinction in place of its exponential": (rates, "dust_transmission", lambda g, a, att: 1.0 if att else g * a),
     "an attenuated field attenuated again": (rates, "dust_transmission", lambda g, a, att: exp(-g * a)),
     "H2 lines without the line width": (rates, "h2_shielding", _h2_without_b),

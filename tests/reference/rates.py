@@ -3,7 +3,7 @@
 Each function names its source. Nothing here knows of networks, cells or states.
 """
 
-from math import exp, log10, pi, sqrt
+from math import exp, log, log10, pi, sqrt
 
 # CODATA 2018, cgs
 BOLTZMANN = 1.380649e-16
@@ -47,6 +47,21 @@ def falloff(pressure, high, log_centre):
     width = 0.75 - 1.27 * log_centre
     broadening = 10.0 ** (log_centre / (1.0 + (log10(pressure) / width) ** 2))
     return min(high, high * pressure / (1.0 + pressure) * broadening)
+
+
+def enthalpy(t, a, b):
+    """H/R in K: the integral of Cp/R = a1/T^2 + a2/T + a3 + a4 T + ... (McBride, Zehe & Gordon 2002)."""
+    return -a[0] / t + a[1] * log(t) + sum(c * t ** (i + 1) / (i + 1) for i, c in enumerate(a[2:])) + b[0]
+
+
+def entropy(t, a, b):
+    """S/R at 1 bar: the integral of Cp/(R T)."""
+    return -a[0] / (2.0 * t**2) - a[1] / t + a[2] * log(t) + sum(c * t**i / i for i, c in enumerate(a[3:], 1)) + b[1]
+
+
+def log_equilibrium(t, heat, order, gained):
+    """ln of K_c in cm^-3 to the power `gained`; heat dH/R in K and order dS/R at 1 bar."""
+    return order - heat / t + gained * log(1.0e6 / (BOLTZMANN * t))
 
 
 # ---- light --------------------------------------------------------------------------------

@@ -51,7 +51,7 @@ class System:
                 for row in (index[name], self.total if names.is_adsorbed(name) else None):
                     if row is not None:
                         stoichiometry[row, r] = stoichiometry.get((row, r), 0) + sign
-            if reaction.kind == "third_body":
+            if "third_body" in (reaction.kind, reaction.extra.get("forward")):
                 self.with_colliders.append(r)
             if c.low is not None:
                 self.falloffs.append((r, c.low, c.high, c.log_centre))
