@@ -256,7 +256,8 @@ def test_small_network_uses_everything(three):
     _, network = three
     assert {r.kind for r in network.reactions} == {
         "gas", "capture", "falloff", "three_body", "third_body", "light", "cosmic", "hydrogen_formation", "charging",
-        "accretion", "thermal_desorption", "cosmic_desorption", "photodesorption", "surface"}
+        "accretion", "thermal_desorption", "cosmic_desorption", "photodesorption", "surface", "reverse"}
+    assert {r.extra["forward"] for r in network.reactions if r.kind == "reverse"} == {"gas", "falloff", "third_body"}
     lines = network.raw
     assert any(line.get("pieces") for line in lines["gas"]) and any(line.get("adds") for line in lines["falloff"])
     assert {line.get("below") for line in lines["gas"]} == {"extend", "hold", "zero"}

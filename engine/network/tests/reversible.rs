@@ -44,9 +44,9 @@ fn equilibrium_constants_agree_with_tables() {
     }
     // log10 K_p (1 bar). First: sums of log10 K_f of Chase 1998, NIST-JANAF tables 4th ed.
     // (recalled): H2O 10.062 at 1000 K, 3.540 at 2000 K; CO 10.459, 7.469; CO2 20.680, 10.353;
-    // CH4 -1.011 at 1000 K. Then (also for NO,
-    // whose enthalpy there is 0.8 kJ/mol below the one of today): from formation enthalpies and entropies at
-    // 298 K with TRC heat capacities, as the Python package `chemicals` 1.5.2 computes them.
+    // CH4 -1.011 at 1000 K. Then, from NO on (whose enthalpy in these tables is 0.8 kJ/mol below
+    // that of today): formation enthalpies and entropies at 298 K with TRC heat capacities, by the
+    // Python package `chemicals` 1.5.2.
     for (change, t, expected) in [
         ("CO + H2O -> CO2 + H2", 1000.0, 20.680 - 10.459 - 10.062),
         ("CO + H2O -> CO2 + H2", 2000.0, 10.353 - 7.469 - 3.540),
