@@ -20,7 +20,7 @@ mod warn;
 
 pub use expand::expand;
 pub use findings::{Severity, Warning, WarningKind};
-pub use read::{Network, read};
+pub use read::{Network, read, read_all};
 
 #[cfg(test)]
 mod tests;

@@ -3,7 +3,7 @@
 //! It never expands: `expand` does. What a check looks for stands in `check`.
 
 use super::check;
-use super::findings::{Findings, Warning};
+use super::findings::{self, Findings, Warning};
 use super::groups::{self, Group, Head};
 use super::layout::NetworkFile;
 use super::names;
@@ -72,8 +72,14 @@ fn sorted(places: &[usize]) -> Vec<usize> {
     places
 }
 
-/// Reads and checks a network from the text of the file `path`; reports all errors it can find.
+/// Reads and checks a network from the text of the file `path`; reports the errors it finds, many
+/// of them shortened.
 pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
+    read_all(path, text).map_err(|errors| findings::shortened(path, errors))
+}
+
+/// As [`read`], with all errors.
+pub fn read_all(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
     let positions = yaml::positions(path, text).map_err(|error| vec![error])?;
     check_layout(path, &positions)?;
     let file: NetworkFile =
