@@ -17,12 +17,11 @@ pub use start::{
     GivenAbundance, StartChoice, StartKind, compositions, element_totals, start_notes, start_state,
 };
 
-use crate::disk::{Disk, write_table};
+use crate::disk::Disk;
 use crate::errors::{Failure, InputError};
 use crate::network::model::{Chemistry, GrainOptions};
 use crate::yaml;
 use checker::{Checker, quoted};
-use sha2::{Digest, Sha256};
 use std::io;
 use std::path::{Path, PathBuf};
 
@@ -228,28 +227,6 @@ impl Case {
             }
         }
         self.disk.for_columns(&chemistry.column_species, &self.path)
-    }
-
-    /// SHA-256 (hex) of everything that decides the result: the resolved case, the text of the
-    /// network and the cells themselves.
-    pub fn fingerprint(&self) -> String {
-        let mut cells = Vec::new();
-        // Writing to memory cannot fail.
-        let _ = write_table(&self.disk, &mut cells);
-        let mut hash = Sha256::new();
-        for part in [
-            self.resolved.as_bytes(),
-            self.network_text.as_bytes(),
-            &cells,
-        ] {
-            // With its length, so that no part can pass for the end of the one before.
-            hash.update((part.len() as u64).to_le_bytes());
-            hash.update(part);
-        }
-        hash.finalize()
-            .iter()
-            .map(|byte| format!("{byte:02x}"))
-            .collect()
     }
 }
 
