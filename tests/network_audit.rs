@@ -2,8 +2,8 @@
 //! fails here means a flaw in `networks/standard.yaml`, or an audit that went blind.
 
 use frostclock::inquiry::audit::{Audit, audit};
-use frostclock::network::WarningKind as Kind;
 use frostclock::network::audit::Finding;
+use frostclock::network::{Severity, WarningKind as Kind};
 use std::fs;
 use std::sync::OnceLock;
 
@@ -298,6 +298,34 @@ fn a_neutral_without_an_ice_is_found() {
     };
     assert_eq!(only.kind, Some(Kind::NoIce));
     assert_eq!(only.line, Some(line_of("  - {name: He, ")));
+}
+
+// Anions end otherwise than cations: a network with them would be full of false doubts, or of none.
+#[test]
+fn anions_end_by_cations_or_detachment() {
+    let with = |change: &str| {
+        let line = format!(
+            "gas:\n  - {{change: {change}, at_300K: 1.0e-12, valid: [5, 4000], standing: estimated, source: made_up}}\n  - {{change: O + e- -> O-, at_300K: 1.0e-15, valid: [5, 4000], standing: estimated, source: made_up}}"
+        );
+        let species = "  - {name: O-, enthalpy: 108.0, source: made_up}\nshielding:";
+        let found = findings(&[("gas:", &line), ("shielding:", species)]);
+        found.iter().map(|f| f.kind).collect::<Vec<_>>()
+    };
+    assert_eq!(with("O- + O+ -> O + O"), []);
+    assert_eq!(with("O- + H -> OH + e-"), []);
+    // Given and taken by hydrogen only.
+    assert!(with("OH + H -> OH + H").contains(&Some(Kind::NeverRecombines)));
+}
+
+// A count that stops at twenty would let a person think the work nearly done.
+#[test]
+fn check_counts_all_errors() {
+    let wrong = AUDITED.replace("source: made_up", "source: nobody");
+    let errors = AUDITED.matches("source: made_up").count();
+    let found = audited(&wrong);
+    assert!(errors > 30 && found.iter().all(|f| f.severity == Severity::Error));
+    assert_eq!(found.len(), errors, "{found:#?}");
+    assert!(found.windows(2).all(|pair| pair[0].line <= pair[1].line));
 }
 
 // A stated reason must silence this one doubt and no other.

@@ -36,7 +36,7 @@ pub struct Audit {
 /// A file that cannot be read; what is wrong in it is among the findings.
 pub fn audit(name: &str) -> Result<Audit, Failure> {
     let (path, text) = text(name)?;
-    let read = network::read(&path, &text).and_then(|network| {
+    let read = network::read_all(&path, &text).and_then(|network| {
         Ok((
             network::expand(&network, &GrainOptions::default())?,
             network,

@@ -208,8 +208,8 @@ fn ice_partners(network: &Network, unused: &HashSet<String>, warnings: &mut Vec<
     }
 }
 
-/// Cations that meet neither electrons nor grains; anions that meet no cation and that no light
-/// strips.
+/// Cations that meet neither electrons nor grains; anions that meet no cation and
+/// never lose their electron.
 fn recombination(network: &Network, unused: &HashSet<String>, warnings: &mut Vec<Warning>) {
     let roster = &network.roster;
     let charge = |place: usize| roster.species[place].charge;
@@ -221,10 +221,9 @@ fn recombination(network: &Network, unused: &HashSet<String>, warnings: &mut Vec
             q if q > 0 => Some(*s) == electron,
             _ => charge(*s) > 0,
         };
-        let stripped = charge(ion) < 0
-            && entry.group == Group::Light
-            && entry.products.iter().any(|s| Some(*s) == electron);
-        gone && (entry.reactants.iter().any(met) || stripped)
+        // By light or in a collision, the electron comes off.
+        let detached = charge(ion) < 0 && entry.products.iter().any(|s| Some(*s) == electron);
+        gone && (entry.reactants.iter().any(met) || detached)
     };
     let on_grains: HashSet<usize> = network.neutralisation.iter().map(|(ion, _)| *ion).collect();
     for place in (0..roster.gas).filter(|place| charge(*place) != 0 && Some(*place) != electron) {
@@ -234,7 +233,7 @@ fn recombination(network: &Network, unused: &HashSet<String>, warnings: &mut Vec
         }
         let text = match charge(place) {
             q if q > 0 => "neither electrons nor grains destroy it",
-            _ => "neither cations nor light destroy it",
+            _ => "no cation destroys it, and nothing detaches its electron",
         };
         warnings.push(network.species_warning(
             place,

@@ -159,24 +159,23 @@ impl<'a> Findings<'a> {
         self.errors.is_empty()
     }
 
-    /// The errors by line, the first [`MOST_ERRORS`] of them and a word about the others.
+    /// All errors by line.
     pub fn finish(mut self) -> Vec<InputError> {
         self.errors.sort_by_key(|error| error.line);
-        let further = self.errors.len().saturating_sub(MOST_ERRORS);
-        self.errors.truncate(MOST_ERRORS);
-        if further > 0 {
-            let found = format!("{further} further errors");
-            let expected = "the errors above corrected first";
-            self.errors.push(InputError::new(
-                self.file,
-                None,
-                "whole file",
-                found,
-                expected,
-            ));
-        }
         self.errors
     }
+}
+
+/// The first [`MOST_ERRORS`] of the errors in `file`, and a word about the others.
+pub(super) fn shortened(file: &Path, mut errors: Vec<InputError>) -> Vec<InputError> {
+    let further = errors.len().saturating_sub(MOST_ERRORS);
+    errors.truncate(MOST_ERRORS);
+    if further > 0 {
+        let found = format!("{further} further errors");
+        let expected = "the errors above corrected first";
+        errors.push(InputError::new(file, None, "whole file", found, expected));
+    }
+    errors
 }
 
 impl std::fmt::Display for Warning {

@@ -22,7 +22,7 @@ mod warn;
 
 pub use expand::expand;
 pub use findings::{Severity, Warning, WarningKind};
-pub use read::{Network, read, read_with};
+pub use read::{Network, read, read_all, read_with};
 
 #[cfg(test)]
 mod tests;
