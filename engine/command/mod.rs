@@ -7,6 +7,7 @@ mod at;
 mod gather;
 mod history;
 mod look;
+mod network;
 mod preview;
 mod print;
 mod run;
@@ -46,6 +47,8 @@ enum Verb {
     History(history::Arguments),
     /// Abundances at any time, in one cell or in all
     At(at::Arguments),
+    /// Work on a network file itself
+    Network(network::Arguments),
 }
 
 /// Runs the command with the process's arguments; the exit status is decided here and nowhere else.
@@ -66,6 +69,7 @@ pub fn main() -> u8 {
         Verb::Look(a) => look::look(&a),
         Verb::History(a) => history::history(&a),
         Verb::At(a) => at::at(&a),
+        Verb::Network(a) => network::network(&a),
     };
     match done {
         Ok(Outcome::Done) => 0,
