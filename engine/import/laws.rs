@@ -3,7 +3,7 @@
 //! It never compares rows: `join` does; and it never judges a line: the reader of networks does.
 
 use super::mapping::NameForm;
-use super::numbers::Cells;
+use super::numbers::{self, Cells};
 use super::plan::{ChangePlan, LawPlan, Pick, Plan, PowerPlan, RulePlan, Value};
 use super::sources::Sources;
 use super::translate::{self, Side};
@@ -169,10 +169,11 @@ fn rule<'p>(cells: Cells, plan: &'p Plan, markers: &[String]) -> Result<&'p Rule
     let fits = |rule: &&RulePlan| {
         let by_label = rule.labels.is_empty()
             || label.is_some_and(|label| rule.labels.iter().any(|known| known == label));
-        let by_marker = rule
-            .marker
-            .as_ref()
-            .is_none_or(|marker| markers.contains(marker));
+        // A marker nobody asked for may change the meaning of a coefficient (a third body).
+        let by_marker = match &rule.marker {
+            Some(marker) => !markers.is_empty() && markers.iter().all(|other| other == marker),
+            None => markers.is_empty() || matches!(rule.law, LawPlan::LeaveOut(_)),
+        };
         by_label && by_marker
     };
     plan.rules.iter().find(fits).ok_or_else(|| {
@@ -294,7 +295,7 @@ fn power(cells: Cells, plan: &PowerPlan) -> Result<[f64; 3], String> {
     } else {
         (300.0 / plan.reference).powf(slope)
     };
-    let at_300k = cells.value(&plan.at_300k)? * to_300k;
+    let at_300k = numbers::rounded(cells.value(&plan.at_300k)? * to_300k, to_300k != 1.0);
     if !at_300k.is_finite() {
         return Err(
             "found a coefficient that overflows at 300 K, expected a finite one".to_string(),

@@ -147,7 +147,9 @@ impl Cells<'_> {
                 "found `{text}` in `{name}`, expected a number that a computer can hold"
             ));
         }
-        Ok(number)
+        let converted =
+            value.factor != 1.0 || !value.times.is_empty() || value.given_as != GivenAs::Value;
+        Ok(rounded(number, converted))
     }
 
     pub fn optional(&self, value: &Option<Value>, default: f64) -> Result<f64, String> {
@@ -197,6 +199,15 @@ fn list<T>(words: &BTreeMap<String, T>) -> String {
     }
     let known: Vec<&str> = words.keys().map(String::as_str).collect();
     format!("one of {}", known.join(", "))
+}
+
+/// A converted number to 12 digits, which is more than tables hold: 0.923 rather than
+/// 0.9230000000000002.
+pub fn rounded(number: f64, converted: bool) -> f64 {
+    if !converted {
+        return number;
+    }
+    format!("{number:.11e}").parse().unwrap_or(number)
 }
 
 /// A finite number. Exponents may be marked with D, as Fortran does.

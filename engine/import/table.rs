@@ -214,6 +214,9 @@ fn quoted_cell(text: &str, quote: char) -> Result<(String, &str), String> {
 }
 
 fn fixed(line: &str, places: &[(String, usize, usize)]) -> Result<Vec<String>, String> {
+    if line.contains('\t') {
+        return Err("found a tab, whose width nobody knows, expected blanks".to_string());
+    }
     let signs: Vec<char> = line.chars().collect();
     let blank = |at: Option<usize>| {
         at.and_then(|at| signs.get(at))
