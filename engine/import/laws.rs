@@ -249,8 +249,8 @@ fn coefficient(
                 },
             )
         }
-        LawPlan::Falloff { low, high, centre } => {
-            let (low, high) = (power(cells, low)?, power(cells, high)?);
+        LawPlan::Falloff(limits, centre) => {
+            let (low, high) = (power(cells, &limits.0)?, power(cells, &limits.1)?);
             let centre = cells.value(centre)?;
             (
                 Group::Falloff,

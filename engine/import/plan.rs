@@ -65,11 +65,8 @@ pub enum LawPlan {
         dipole: Value,
         share: Option<Value>,
     },
-    Falloff {
-        low: PowerPlan,
-        high: PowerPlan,
-        centre: Value,
-    },
+    /// Low and high limit.
+    Falloff(Box<(PowerPlan, PowerPlan)>, Value),
     Light {
         rate: Value,
         extinction: Value,

@@ -80,6 +80,15 @@ fn check_outputs(arguments: &Arguments) -> Result<(), Failure> {
         let found = format!("`{}`", arguments.output.display());
         return Err(wrong("--output", found, "a name ending in .yaml"));
     }
+    // A pipe or terminal (`/dev/stdout`) needs no name.
+    let unfit = |path: &&PathBuf| {
+        path.extension().is_none_or(|end| end != "csv")
+            && !fs::metadata(path).is_ok_and(|data| !data.is_file() && !data.is_dir())
+    };
+    if let Some(path) = arguments.rejected.as_ref().filter(unfit) {
+        let found = format!("`{}`", path.display());
+        return Err(wrong("--rejected", found, "a name ending in .csv"));
+    }
     let outputs = [
         ("--output", Some(&arguments.output)),
         ("--rejected", arguments.rejected.as_ref()),

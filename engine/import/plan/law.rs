@@ -151,7 +151,7 @@ pub(super) fn law(rule: &Rule, mapping: &MappingFile, place: &str, check: &mut C
                 place,
                 check,
             );
-            LawPlan::Falloff { low, high, centre }
+            LawPlan::Falloff(Box::new((low, high)), centre)
         }
         Law::Light => {
             let rate = need(&rule.rate, "rate", Quantity::Plain);
