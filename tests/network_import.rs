@@ -2,6 +2,8 @@
 //! imported by the command, read back, and their coefficients compared with hand values; planted
 //! mistakes are listed with their lines; wrong mappings are named and harm nothing.
 
+#[path = "network_import/example.rs"]
+mod example;
 #[path = "network_import/mistakes.rs"]
 mod mistakes;
 mod support;

@@ -292,10 +292,16 @@ fn value(form: &Number, quantity: Quantity, place: &str, check: &mut Checker) ->
             "one of them",
         ),
     }
-    for (key, number) in [("times", form.times), ("over", form.over)] {
-        if let Some(number) = number {
-            check.positive(number, &format!("{place}.{key}"));
-        }
+    // A factor of -1 turns a sign that the table means the other way round.
+    if let Some(times) = form
+        .times
+        .filter(|times| !times.is_finite() || *times == 0.0)
+    {
+        let place = format!("{place}.times");
+        check.error(&place, times.to_string(), "a finite number other than 0");
+    }
+    if let Some(over) = form.over {
+        check.positive(over, &format!("{place}.over"));
     }
     let unit = form
         .unit

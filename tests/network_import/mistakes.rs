@@ -116,6 +116,15 @@ const MISTAKES: &[Mistake] = &[
     (
         COMMA,
         "comma.yaml",
+        "times: 2.0",
+        "times: 0",
+        &[
+            "comma.yaml:24: laws[4].per_ionisation.times: found 0, expected a finite number other than 0",
+        ],
+    ),
+    (
+        COMMA,
+        "comma.yaml",
         "over: 1.3e-17",
         "over: 0",
         &["comma.yaml:23: laws[3].per_ionisation.over: found 0, expected a finite number above 0"],
