@@ -186,10 +186,11 @@ fn summarise(made: &Import, arguments: &Arguments) {
         .collect();
     let entries: usize = made.entries.iter().map(|(_, count)| count).sum();
     log::info!(
-        "{} read, {} mapped to {entries} entries of {}: {}",
+        "{} read, {} mapped to {entries} {} of {} species: {}",
         counted(made.rows, "row"),
         made.mapped,
-        counted(made.species, "species").replace("speciess", "species"),
+        if entries == 1 { "entry" } else { "entries" },
+        made.species,
         groups.join(", ")
     );
     if !made.rejected.is_empty() {
