@@ -8,6 +8,7 @@
 //! 2. [`disk`] makes the cells and their conditions from a table or a recipe.
 //! 3. [`network`] reads the reaction network, checks it and expands it: from each ice line follow
 //!    freeze-out and the ways back, from each ion its neutralisation on grains of every charge.
+//!    [`import`] makes such a file from somebody's rate table.
 //! 4. [`rates`] turns a reaction and a cell into a coefficient, one file per cause, and the
 //!    network into the abstract steps of the kinetics.
 //! 5. [`kinetics`] integrates dx/dt of one cell. It knows no chemistry.
@@ -90,6 +91,7 @@ pub mod case;
 pub mod command;
 pub mod disk;
 pub mod errors;
+pub mod import;
 pub mod inquiry;
 pub mod kinetics;
 pub mod network;

@@ -47,7 +47,7 @@ enum Verb {
     History(history::Arguments),
     /// Abundances at any time, in one cell or in all
     At(at::Arguments),
-    /// Look at a reaction network: check it, list its coefficients, compare it with another
+    /// Work on a reaction network: check it, list its coefficients, compare two, import a table
     #[command(subcommand)]
     Network(network::Verb),
 }

@@ -4,6 +4,7 @@
 
 mod check;
 mod compare;
+mod import;
 mod show;
 
 use super::Outcome;
@@ -18,6 +19,8 @@ pub enum Verb {
     Show(Box<show::Arguments>),
     /// Say what differs between two networks
     Compare(compare::Arguments),
+    /// Turn a rate table into a network file, as a mapping file says
+    Import(import::Arguments),
 }
 
 pub fn network(verb: &Verb) -> Result<Outcome, Failure> {
@@ -25,6 +28,7 @@ pub fn network(verb: &Verb) -> Result<Outcome, Failure> {
         Verb::Check(a) => check::check(a),
         Verb::Show(a) => show::show(a),
         Verb::Compare(a) => compare::compare(a),
+        Verb::Import(a) => import::import(a),
     }
 }
 
