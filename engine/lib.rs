@@ -16,6 +16,9 @@
 //! 7. [`store`] makes the run file, HDF5 that explains itself, and reads it back.
 //! 8. [`answers`] reads results off a run file.
 //!
+//! Beside this way, [`inquiry`] computes what somebody asks for apart from a run: coefficients of a
+//! network in given conditions.
+//!
 //! [`command`] is the program `frostclock`, a thin layer over these; [`errors`] holds the one
 //! failure type and its exit statuses. Once [`run::Prepared`] exists, nothing a user wrote can
 //! still be wrong.
@@ -87,6 +90,7 @@ pub mod case;
 pub mod command;
 pub mod disk;
 pub mod errors;
+pub mod inquiry;
 pub mod kinetics;
 pub mod network;
 pub mod rates;

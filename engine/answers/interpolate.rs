@@ -133,6 +133,14 @@ mod tests {
         }
     }
 
+    /// Fails if the weights of the harmonic mean are swapped between the two sides: by hand, widths
+    /// 1 and 2 with slopes 1 and 1/2 give (5 + 4)/(5/1 + 4/(1/2)) in the middle.
+    #[test]
+    fn the_nearer_side_weighs_as_published() {
+        let m = slopes(&[0.0, 1.0, 3.0], &[0.0, 1.0, 2.0]);
+        assert!((m[1] - 9.0 / 13.0).abs() < 1e-15, "{}", m[1]);
+    }
+
     /// Fails if t = 0, values at the floor, missing values or times outside are mishandled.
     #[test]
     fn zero_time_floor_missing_and_outside() {

@@ -4,7 +4,7 @@
 
 use crate::errors::Failure;
 use crate::network::model::Phase;
-use crate::run::record::CellStatus;
+use crate::run::record::{Balance, CellStatus};
 use crate::store::RunFile;
 
 /// A label and what is to be said about it.
@@ -133,8 +133,14 @@ fn closures(run: &RunFile) -> Result<Vec<(&'static str, String)>, Failure> {
             *w = w.max(if v.is_nan() { 0.0 } else { v });
         }
     }
-    let [elements, charge, dust, ice] = worst;
-    Ok(vec![
+    let worst = Balance::from_numbers(worst);
+    let Balance {
+        elements,
+        charge,
+        dust,
+        ice,
+    } = worst;
+    let mut lines = vec![
         (
             "elements",
             format!("kept to {elements:.1e} of each total at worst"),
@@ -147,7 +153,11 @@ fn closures(run: &RunFile) -> Result<Vec<(&'static str, String)>, Failure> {
             "grains",
             format!("kept to {dust:.1e}; ice total matches its parts to {ice:.1e}"),
         ),
-    ])
+    ];
+    if let Some(complaint) = worst.complaint() {
+        lines.push(("caution", format!("{complaint} in some cell: see `checks`")));
+    }
+    Ok(lines)
 }
 
 /// The failed cells: number, when (s) and why.

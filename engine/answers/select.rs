@@ -4,6 +4,7 @@
 
 use crate::disk::conditions::Conditions;
 use crate::errors::InputError;
+use crate::network::names::alike;
 use crate::store::RunHeader;
 use std::path::Path;
 
@@ -37,7 +38,8 @@ pub fn species(header: &RunHeader, list: &str) -> Result<Vec<usize>, InputError>
         .into_iter()
         .map(|name| {
             header.find(name).ok_or_else(|| {
-                let alike = alike(header, name);
+                let names = header.species.iter().map(|s| s.name.as_str());
+                let alike = alike(names, name);
                 let expected = if alike.is_empty() {
                     "a species of the run (`look --species` lists them)".to_string()
                 } else {
@@ -47,17 +49,4 @@ pub fn species(header: &RunHeader, list: &str) -> Result<Vec<usize>, InputError>
             })
         })
         .collect()
-}
-
-/// Names that differ by case, by the place they are in, or that contain `name`; at most five.
-fn alike<'a>(header: &'a RunHeader, name: &str) -> Vec<&'a str> {
-    let bare = |s: &str| s.trim_end_matches("(ads)").to_lowercase();
-    let wanted = bare(name);
-    let names = header.species.iter().map(|s| s.name.as_str());
-    let (mut same, other): (Vec<&str>, Vec<&str>) = names.partition(|s| bare(s) == wanted);
-    if wanted.len() > 1 {
-        same.extend(other.into_iter().filter(|s| bare(s).contains(&wanted)));
-    }
-    same.truncate(5);
-    same
 }

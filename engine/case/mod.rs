@@ -17,12 +17,11 @@ pub use start::{
     GivenAbundance, StartChoice, StartKind, compositions, element_totals, start_notes, start_state,
 };
 
-use crate::disk::{Disk, write_table};
+use crate::disk::Disk;
 use crate::errors::{Failure, InputError};
 use crate::network::model::{Chemistry, GrainOptions};
 use crate::yaml;
 use checker::{Checker, quoted};
-use sha2::{Digest, Sha256};
 use std::io;
 use std::path::{Path, PathBuf};
 
@@ -180,7 +179,7 @@ fn beside(case: &Path, name: &str) -> PathBuf {
 }
 
 /// What a user did wrong if a named file cannot be read, or None if the machine failed.
-fn unreadable(error: &io::Error) -> Option<&'static str> {
+pub(crate) fn unreadable(error: &io::Error) -> Option<&'static str> {
     match error.kind() {
         io::ErrorKind::NotFound => Some("no such file"),
         io::ErrorKind::IsADirectory => Some("a folder"),
@@ -231,29 +230,6 @@ impl Case {
             }
         }
         self.disk.for_columns(&chemistry.column_species, &self.path)
-    }
-
-    /// SHA-256 (hex) of everything that decides the result: the resolved case, the text of the
-    /// network and the cells themselves.
-    pub fn fingerprint(&self) -> String {
-        let mut cells = Vec::new();
-        // Writing to memory cannot fail.
-        let _ = write_table(&self.disk, &mut cells);
-        let mut hash = Sha256::new();
-        for part in [
-            self.resolved.as_bytes(),
-            self.network_text.as_bytes(),
-            &cells,
-            self.thermo_text.as_bytes(),
-        ] {
-            // With its length, so that no part can pass for the end of the one before.
-            hash.update((part.len() as u64).to_le_bytes());
-            hash.update(part);
-        }
-        hash.finalize()
-            .iter()
-            .map(|byte| format!("{byte:02x}"))
-            .collect()
     }
 }
 

@@ -12,14 +12,20 @@ const TOLERANCE: Bounds = Bounds {
     allows: |x| (1.0e-12..=0.1).contains(&x),
     words: "from 1e-12 to 0.1",
 };
-/// Above 1e-10 the floor hides species every user asks for.
+/// Above 1e-10 the floor hides species every user asks for; far below 1e-40 the integrator chases
+/// numbers that mean nothing.
 const FLOOR: Bounds = Bounds {
-    allows: |x| x > 0.0 && x <= 1.0e-10,
-    words: "above 0, at most 1e-10",
+    allows: |x| (1.0e-40..=1.0e-10).contains(&x),
+    words: "from 1e-40 to 1e-10",
 };
 const LAYERS: Bounds = Bounds {
     allows: |x| x > 0.0 && x <= 1000.0,
     words: "above 0, at most 1000",
+};
+/// Encounters are confined to whole layers and more: below one there is no pair to meet.
+const ACTIVE_LAYERS: Bounds = Bounds {
+    allows: |x| (1.0..=1000.0).contains(&x),
+    words: "from 1 to 1000",
 };
 /// A site is between about 1 and 30 A apart from the next.
 const SITES: Bounds = Bounds {
@@ -52,10 +58,15 @@ pub(super) fn accuracy(check: &mut Checker, block: &AccuracyBlock) -> Block<(f64
 
 pub(super) fn grains(check: &mut Checker, block: &GrainsBlock) -> Block<GrainOptions> {
     let usual = GrainOptions::default();
+    let active = check.number(
+        "grains.active_layers",
+        block.active_layers.as_ref(),
+        usual.active_layers,
+        ACTIVE_LAYERS,
+    );
     let mut layers = |name: &str, given: &Option<Quantity>, default: f64| {
         check.number(&format!("grains.{name}"), given.as_ref(), default, LAYERS)
     };
-    let active = layers("active_layers", &block.active_layers, usual.active_layers);
     let desorbing = layers(
         "desorbing_layers",
         &block.desorbing_layers,

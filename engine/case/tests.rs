@@ -1,7 +1,7 @@
 //! Whole case files: what is read, what is refused and how the errors point.
 
 use super::*;
-use crate::disk::table;
+use crate::disk::{table, write_table};
 use std::collections::HashMap;
 
 mod refusals;
@@ -130,20 +130,12 @@ fn a_resolved_case_reads_as_itself() {
             (case.colliders, case.turbulence)
         );
         assert_eq!(again.title, case.title);
-        assert_eq!(again.fingerprint(), case.fingerprint());
         assert!(
             !again.notes.iter().any(|note| note.contains("by default")),
             "{:?}",
             again.notes
         );
     }
-    // The same words on a disk of other cells are another run.
-    let changed = TABLE.replace("1e9", "2e9");
-    let other = read_case(SMALL, &[("dir/cells.csv", &changed)]).unwrap();
-    assert_ne!(
-        other.fingerprint(),
-        read_case(SMALL, &[]).unwrap().fingerprint()
-    );
 }
 
 /// A recipe's disk handed on as a table (to Python, to users) must be the same disk.

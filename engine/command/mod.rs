@@ -7,6 +7,7 @@ mod at;
 mod gather;
 mod history;
 mod look;
+mod network;
 mod preview;
 mod print;
 mod run;
@@ -46,6 +47,9 @@ enum Verb {
     History(history::Arguments),
     /// Abundances at any time, in one cell or in all
     At(at::Arguments),
+    /// Look at a reaction network: check it, list its coefficients, compare it with another
+    #[command(subcommand)]
+    Network(network::Verb),
 }
 
 /// Runs the command with the process's arguments; the exit status is decided here and nowhere else.
@@ -66,10 +70,12 @@ pub fn main() -> u8 {
         Verb::Look(a) => look::look(&a),
         Verb::History(a) => history::history(&a),
         Verb::At(a) => at::at(&a),
+        Verb::Network(a) => network::network(&a),
     };
     match done {
         Ok(Outcome::Done) => 0,
         Ok(Outcome::SomeCellsFailed) => 1,
+        Ok(Outcome::InputWrong) => 2,
         Err(failure) => {
             // Nobody may be reading: no reason to panic as `eprintln!` would.
             let _ = writeln!(std::io::stderr(), "frostclock: {failure}");
@@ -83,6 +89,8 @@ pub fn main() -> u8 {
 enum Outcome {
     Done,
     SomeCellsFailed,
+    /// The input is wrong, and what it is has been printed as the result.
+    InputWrong,
 }
 
 /// Log lines to stderr, level by `RUST_LOG` or `--quiet`, without tearing a progress bar.

@@ -12,6 +12,8 @@ use std::path::Path;
 pub struct Table {
     pub heads: Vec<String>,
     pub rows: Vec<Vec<String>>,
+    /// Columns of words, which are aligned to the left.
+    pub words: Vec<usize>,
 }
 
 impl Table {
@@ -19,10 +21,11 @@ impl Table {
         Table {
             heads: heads.into_iter().map(Into::into).collect(),
             rows: Vec::new(),
+            words: Vec::new(),
         }
     }
 
-    /// Writes the table to stdout, columns aligned to the right. A reader that went away (`| head`)
+    /// Writes the table to stdout, columns of numbers aligned to the right. A reader that went away (`| head`)
     /// is no error.
     pub fn print(&self) -> Result<(), Failure> {
         let all = || std::iter::once(&self.heads).chain(&self.rows);
@@ -34,11 +37,16 @@ impl Table {
         }
         let lines: Vec<String> = all()
             .map(|row| {
-                let cells = row
-                    .iter()
-                    .zip(&widths)
-                    .map(|(cell, width)| format!("{cell:>width$}"));
-                cells.collect::<Vec<_>>().join("  ")
+                let cells =
+                    row.iter()
+                        .zip(&widths)
+                        .enumerate()
+                        .map(|(i, (cell, width))| match self.words.contains(&i) {
+                            true => format!("{cell:<width$}"),
+                            false => format!("{cell:>width$}"),
+                        });
+                let line = cells.collect::<Vec<_>>().join("  ");
+                line.trim_end().to_string()
             })
             .collect();
         out(&lines.join("\n"))

@@ -162,6 +162,9 @@ pub struct GasLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     /// Whether the reverse runs too, by the equilibrium constant.
     #[serde(default)]
     pub reversible: bool,
@@ -186,6 +189,9 @@ pub struct CaptureLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     pub within: Option<f64>,
     pub standing: Standing,
     pub source: String,
@@ -218,6 +224,9 @@ pub struct FalloffLine {
     pub below: Option<Below>,
     #[serde(default)]
     pub adds: bool,
+    /// Why the reaction may be endothermic and still need no barrier.
+    #[serde(default)]
+    pub endothermic: String,
     /// Whether the reverse runs too, by the equilibrium constant.
     #[serde(default)]
     pub reversible: bool,

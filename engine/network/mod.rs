@@ -3,7 +3,10 @@
 //!
 //! It never evaluates the rate of a run: `rates` does.
 
+pub mod audit;
 mod check;
+mod collisions;
+pub mod compare;
 pub mod equilibrium;
 pub mod expand;
 pub mod findings;
@@ -18,8 +21,8 @@ pub mod thermo;
 mod warn;
 
 pub use expand::expand;
-pub use findings::{Warning, WarningKind};
-pub use read::{Network, read, read_with};
+pub use findings::{Severity, Warning, WarningKind};
+pub use read::{Network, read, read_all, read_with};
 
 #[cfg(test)]
 mod tests;

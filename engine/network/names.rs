@@ -53,6 +53,19 @@ impl NameError {
     }
 }
 
+/// Of `names` those that differ from `wanted` by case, by the place they are in, or that contain
+/// it; at most five. For whoever mistyped a name.
+pub fn alike<'a>(names: impl Iterator<Item = &'a str>, wanted: &str) -> Vec<&'a str> {
+    let bare = |s: &str| s.trim_end_matches(ADSORBED).to_lowercase();
+    let wanted = bare(wanted);
+    let (mut same, other): (Vec<&str>, Vec<&str>) = names.partition(|s| bare(s) == wanted);
+    if wanted.len() > 1 {
+        same.extend(other.into_iter().filter(|s| bare(s).contains(&wanted)));
+    }
+    same.truncate(5);
+    same
+}
+
 /// Standard atomic weight of an element symbol, amu.
 pub fn atomic_weight(symbol: &str) -> Option<f64> {
     ELEMENTS

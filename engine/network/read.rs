@@ -3,7 +3,7 @@
 //! It never expands: `expand` does. What a check looks for stands in `check`.
 
 use super::check;
-use super::findings::{Findings, Warning};
+use super::findings::{self, Findings, Warning};
 use super::groups::{self, Group, Head};
 use super::layout::NetworkFile;
 use super::names;
@@ -75,14 +75,27 @@ fn sorted(places: &[usize]) -> Vec<usize> {
     places
 }
 
-/// Reads and checks a network from the text of the file `path`; reports all errors it can find.
-/// Polynomials that are not built in are read from the disk.
+/// Reads and checks a network from the text of the file `path`; reports the errors it finds, many
+/// of them shortened. Polynomials that are not built in are read from the disk.
 pub fn read(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
     read_with(path, text, None)
 }
 
 /// The same, with the text of the polynomials that the network names, where it is known already.
 pub fn read_with(
+    path: &Path,
+    text: &str,
+    polynomials: Option<&str>,
+) -> Result<Network, Vec<InputError>> {
+    read_whole(path, text, polynomials).map_err(|errors| findings::shortened(path, errors))
+}
+
+/// As [`read`], with all errors.
+pub fn read_all(path: &Path, text: &str) -> Result<Network, Vec<InputError>> {
+    read_whole(path, text, None)
+}
+
+fn read_whole(
     path: &Path,
     text: &str,
     polynomials: Option<&str>,

@@ -10,15 +10,20 @@ use crate::network::equilibrium::{Reach, log_constant};
 use crate::network::model::{Cause, Chemistry, Range};
 
 /// What the counts of [`Cautions`] mean, in their order.
-pub const CAUTIONS: [&str; 4] = [
+pub const CAUTIONS: [&str; 6] = [
     "coefficients used below their temperature range",
     "coefficients held above their temperature range",
     "photo rates without a value for a field's spectrum (Draine rate used)",
     "shielding columns beyond the table (edge value used)",
+    "cosmic-ray desorption rated for 0.1 um grains used for grains of another radius",
+    "secondary UV scaled by more than 10 for sparse dust (absorption by gas left out)",
 ];
 
+/// The secondary UV field scales inversely with the dust as long as dust absorbs it.
+const SECONDARY_SCALE_KNOWN: f64 = 10.0;
+
 /// How often a law was used outside what it is known for, per [`CAUTIONS`].
-pub type Cautions = [u32; 4];
+pub type Cautions = [u32; 6];
 
 /// What all cells of a case share besides the network.
 #[derive(Debug, Clone, PartialEq)]
@@ -206,6 +211,8 @@ impl<'a> Cell<'a> {
             } => self.light(rates, *extinction, *shield),
             Cause::Ionisation { value } => value * (c.zeta_cosmic + c.zeta_xray + c.zeta_nuclides),
             Cause::SecondaryLight { value } => {
+                self.cautions[5] +=
+                    u32::from(light::secondary_dust_scale(c.dust_area) > SECONDARY_SCALE_KNOWN);
                 value * (c.zeta_cosmic + c.zeta_xray) * light::secondary_dust_scale(c.dust_area)
             }
             Cause::HydrogenFormation { .. } => self.hydrogen_formation,
@@ -230,7 +237,11 @@ impl<'a> Cell<'a> {
                 }
             }
             Cause::ThermalDesorption { binding } => ice::thermal_desorption(binding, c.t_dust),
-            Cause::CosmicDesorption { binding } => ice::cosmic_desorption(binding, c.zeta_cosmic),
+            Cause::CosmicDesorption { binding } => {
+                let known = ice::COSMIC_HEATING_RADIUS;
+                self.cautions[4] += u32::from((c.grain_radius / known - 1.0).abs() > 0.01);
+                ice::cosmic_desorption(binding, c.zeta_cosmic)
+            }
             Cause::Photodesorption { yields } => ice::photodesorption(
                 self.flux_on_ice,
                 *yields,

@@ -11,8 +11,12 @@ pub fn thermal_desorption(binding: &Binding, t_dust: f64) -> f64 {
     binding.prefactor * (-binding.energy / t_dust).exp()
 }
 
+/// Grain radius for which the share of time spent hot was worked out, cm (Hasegawa & Herbst 1993).
+pub const COSMIC_HEATING_RADIUS: f64 = 1e-5;
+
 /// Desorption by cosmic-ray heating, s^-1 (Hasegawa & Herbst 1993, MNRAS 261, 83): a grain of
-/// 0.1 um spends 3.16e-19 of the time near 70 K at zeta = 1.3e-17 s^-1; proportional to zeta.
+/// 0.1 um spends 3.16e-19 of the time near 70 K at zeta = 1.3e-17 s^-1; proportional to zeta. Used as
+/// it is for other radii (a caution of the cell).
 pub fn cosmic_desorption(binding: &Binding, zeta_cosmic: f64) -> f64 {
     3.16e-19 * thermal_desorption(binding, 70.0) * zeta_cosmic / 1.3e-17
 }

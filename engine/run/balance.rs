@@ -53,8 +53,8 @@ impl Invariants {
     }
 
     /// Drifts of `state` since `start`. Elements and dust relative to their own totals, charge
-    /// relative to the sum of |charge| x abundance, the ice total relative to itself (or to the
-    /// abundance of all elements where there is hardly any ice).
+    /// relative to the sum of |charge| x abundance, the ice total relative to the sum of its parts
+    /// (or to 1e-15 per H where there is hardly any ice).
     pub fn drift(&self, start: &[f64], state: &[f64]) -> Balance {
         let mut balance = Balance {
             elements: 0.0,
@@ -80,14 +80,83 @@ impl Invariants {
             .iter()
             .map(|(id, q)| (q * state[*id]).abs())
             .sum();
-        if scale > 0.0 {
-            balance.charge = (charge(state) - charge(start)).abs() / scale;
-        }
+        // Below 1e-20 per H there is no charge to speak of: compare with that.
+        balance.charge = (charge(state) - charge(start)).abs() / scale.max(1e-20);
         if let Some(total) = self.ice_total {
             let sum: f64 = self.ices.iter().map(|id| state[*id]).sum();
             // Below 1e-15 per H there is no ice to speak of: compare with that.
             balance.ice = (state[total] - sum).abs() / sum.abs().max(1e-15);
         }
         balance
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::network::model::{GrainOptions, Species};
+
+    fn species(name: &str, phase: Phase, charge: i32, atoms: &[(&str, u32)]) -> Species {
+        Species {
+            name: name.to_string(),
+            phase,
+            charge,
+            mass: 1.0,
+            atoms: atoms.iter().map(|(e, n)| (e.to_string(), *n)).collect(),
+        }
+    }
+
+    /// Gas, charges, grains, ices and their total, in the order of a state.
+    fn chemistry() -> Chemistry {
+        Chemistry {
+            name: "invented".to_string(),
+            species: vec![
+                species("CO", Phase::Gas, 0, &[("C", 1), ("O", 1)]),
+                species("C+", Phase::Gas, 1, &[("C", 1)]),
+                species("O2", Phase::Gas, 0, &[("O", 2)]),
+                species("e-", Phase::Gas, -1, &[]),
+                species("dust-", Phase::Dust, -1, &[("dust", 1)]),
+                species("dust", Phase::Dust, 0, &[("dust", 1)]),
+                species("CO(ads)", Phase::Ice, 0, &[("C", 1), ("O", 1)]),
+                species("ices(total)", Phase::IceTotal, 0, &[]),
+            ],
+            reactions: Vec::new(),
+            spectra: Vec::new(),
+            shielding: Vec::new(),
+            column_species: Vec::new(),
+            options: GrainOptions::default(),
+        }
+    }
+
+    const START: [f64; 8] = [4.0, 2.0, 1.0, 1.5, 0.5, 1.5, 2.0, 2.0];
+
+    fn drift(change: impl Fn(&mut [f64; 8])) -> [f64; 4] {
+        let mut state = START;
+        change(&mut state);
+        Invariants::new(&chemistry())
+            .drift(&START, &state)
+            .numbers()
+    }
+
+    /// Fails if a sum is not watched in one direction or relative to something else: every check
+    /// of conservation in the suite goes through here and would pass whatever happened.
+    #[test]
+    fn every_sum_that_changes_is_seen_in_both_directions() {
+        assert_eq!(drift(|_| ()), [0.0; 4]);
+        // 8 C and 8 O nuclei, 2 grains, charges of 4 in all, 2 adsorbed. Gas to ice keeps all.
+        let frozen = drift(|y| {
+            y[0] -= 1.0;
+            y[6] += 1.0;
+            y[7] += 1.0;
+        });
+        assert_eq!(frozen, [0.0; 4]);
+        for sign in [1.0, -1.0] {
+            assert_eq!(drift(|y| y[2] += 0.5 * sign)[0], 0.125, "elements");
+            assert_eq!(drift(|y| y[5] += 0.5 * sign), [0.0, 0.0, 0.25, 0.0]);
+            let charge = drift(|y| y[3] += 0.5 * sign);
+            let expected = 0.5 / (4.0 + 0.5 * sign);
+            assert_eq!(charge, [0.0, expected, 0.0, 0.0]);
+            assert_eq!(drift(|y| y[7] += 0.5 * sign), [0.0, 0.0, 0.0, 0.25]);
+        }
     }
 }

@@ -6,7 +6,7 @@ use super::cell;
 use super::journal::{self, Journal};
 use super::prepare::Prepared;
 use super::progress::Progress;
-use super::record::{CellRecord, CellStatus};
+use super::record::{Balance, CellRecord, CellStatus};
 use super::signals::StopFlag;
 use super::workers::run_cells;
 use crate::errors::{Failure, InputError, in_words};
@@ -78,6 +78,9 @@ pub fn run(
         let status = record.status;
         if status == CellStatus::Failed {
             log::warn!("cell {} failed: {}", record.cell, record.reason);
+        }
+        if let Some(complaint) = record.balance.iter().find_map(Balance::complaint) {
+            log::warn!("cell {}: {complaint}", record.cell);
         }
         journal.append(&[record])?;
         progress.cell(status);

@@ -124,6 +124,22 @@ impl Balance {
         ice: f64::NAN,
     };
 
+    /// What drifted by more than a sound integration lets it, in words; None if nothing did.
+    /// Round-off stays far below these limits: beyond them a cell's numbers need a second look.
+    pub fn complaint(&self) -> Option<String> {
+        let watched = [
+            ("an element", self.elements, 1e-6),
+            ("charge", self.charge, 1e-4),
+            ("grains", self.dust, 1e-4),
+            ("the ice total", self.ice, 1e-3),
+        ];
+        let worst = watched.iter().find(|(_, drift, limit)| drift > limit)?;
+        let (what, drift, limit) = worst;
+        Some(format!(
+            "{what} kept only to {drift:.1e} (limit {limit:.0e})"
+        ))
+    }
+
     /// The four numbers in the order of their declaration.
     pub fn numbers(&self) -> [f64; 4] {
         [self.elements, self.charge, self.dust, self.ice]

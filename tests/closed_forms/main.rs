@@ -6,6 +6,7 @@
 //! the engine's own rate laws; the tables quoted were evaluated beforehand from the same formulas
 //! by other code.
 
+mod cautions;
 mod gas;
 mod grains;
 mod ices;

@@ -240,6 +240,17 @@ pub fn csv(path: &Path) -> (Vec<String>, BTreeMap<String, Vec<String>>) {
     (heads, rows)
 }
 
+/// All rows of a CSV file in their order, the heads first.
+pub fn rows(path: &Path) -> Vec<Vec<String>> {
+    let mut reader = csv::ReaderBuilder::new()
+        .has_headers(false)
+        .from_path(path)
+        .expect("it is there");
+    (reader.records())
+        .map(|row| row.expect("a row").iter().map(String::from).collect())
+        .collect()
+}
+
 /// The Python of `tools/test`, with what its readers need.
 pub fn python() -> PathBuf {
     let python = std::env::var_os("FROSTCLOCK_PYTHON");

@@ -118,7 +118,7 @@ fn wrong_cases_are_refused_where_they_are_wrong() {
             "title: t\naccuracy: {smallest: 0}",
             2,
             "accuracy.smallest",
-            "above 0",
+            "from 1e-40",
         ),
         ("title: t", "title: t\noutput: run.txt", 2, "output", ".h5"),
         (
@@ -127,6 +127,13 @@ fn wrong_cases_are_refused_where_they_are_wrong() {
             16,
             "grains.charge_states",
             "whole number",
+        ),
+        (
+            "charge_states: 2",
+            "charge_states: 2, active_layers: 0.5",
+            16,
+            "grains.active_layers",
+            "from 1 to 1000",
         ),
         (
             "1.0e15 cm^-2",
