@@ -4,7 +4,7 @@
 
 Takes elements, temperature and density from the run, polynomials from networks/thermo.yaml, and nothing from any
 coefficient. At given volume n_i = (p0/kT) exp(-G_i/RT + sum of a_ij pi_j); the element potentials pi_j are
-found with SciPy so that the elements add up. Exit status 0: every species above 1e-8 (in either) agrees within 1 percent in every cell, 1: not.
+found with SciPy so that the elements add up. Exit status 0: every species above 1e-8 (in either) agrees within 0.1 percent in every cell, 1: not.
 """
 
 import argparse
@@ -18,7 +18,7 @@ from . import names, rates
 from .network import REPOSITORY
 from .thermo import by_species, interval, read_thermo
 
-TOLERANCE = 0.01
+TOLERANCE = 1.0e-3  # seen: 3e-6; 0.01 would let a standard pressure of 1 atm pass
 FLOOR = 1.0e-8
 FEWEST = 6  # main species per cell, else the comparison says little
 
@@ -84,7 +84,7 @@ def check(path):
         for s in np.flatnonzero(main & ~(off <= TOLERANCE)):
             wrong += 1
             print(f"    {species[s]}: {abundance[cell, -1, s]:.6e} in the run, {aim[s]:.6e} at the minimum")
-        if main.sum() < FEWEST or not moved > 10.0 * TOLERANCE:
+        if main.sum() < FEWEST or not moved > 0.1:
             wrong += 1
             print("    too little to compare")
     return 1 if wrong else 0
