@@ -47,6 +47,14 @@ CHANGED = {
     "G2278": ("starts at 282 K, where it crosses the fit of the cold range", {"T_lo": ("300", "282")}),
     "G2511": ("ends at 282 K, where it crosses the fit of the warm range", {"T_hi": ("300", "282")}),
 }
+# High-temperature fits whose barrier is less than the endothermicity. Extended to cold gas the reverse reaction would be
+# faster than collisions; below the joint the barrier is the endothermicity instead, and the value at the joint is kept.
+# Row -> (joint in K, {column: value of the cold piece}).
+COLD_PIECES = {
+    "G1748": (800, {"a": "1.32e-10", "b": "0", "c": "16345"}),
+    "G1753": (800, {"a": "7.233e-09", "b": "0", "c": "14625"}),
+    "G2259": (500, {"a": "2.08e-09", "b": "0", "c": "10079"}),
+}
 HOP_BARRIER = {"N": 400, "O": 750}      # K, measured: Minissale, Congiu & Dulieu 2016
 
 
@@ -73,6 +81,12 @@ def make_changes(rows):
                 raise SystemExit("%s: %s is %s, not %s: decide the change anew" % (name, column, row[column], before))
             row[column] = after
         row["note"] = "; ".join(x for x in (row["note"], "changed here: " + reason) if x)
+    for name, (joint, columns) in COLD_PIECES.items():
+        row = by_id[name]
+        cold = dict(row, id=name + " cold", T_hi=str(joint), confidence="estimated",
+                    note="made here: barrier of the endothermicity", **columns)
+        row["T_lo"] = str(joint)
+        rows.insert(rows.index(row), cold)
 
 
 def power_law(row, T):
@@ -426,7 +440,7 @@ def main(folder, output):
 
     print("entries: " + ", ".join("%s %d" % (n, len(v)) for n, v in groups))
     print("fact rows in the gas groups: %s, total %d" % (dict(report["rows"]), sum(report["rows"].values())))
-    print("rows changed here: %s" % ", ".join(CHANGED))
+    print("rows changed here: %s" % ", ".join([*CHANGED, *COLD_PIECES]))
     print("sources: %d; neutralisation lines: %d" % (len(sources.used()), report["neutralisation lines"]))
     for title in ("joints", "adds", "gas left out", "surface left out", "neutralisation", "near the limit",
                   "spectra estimated"):
