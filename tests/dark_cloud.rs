@@ -7,12 +7,12 @@ use std::path::Path;
 use support::{csv, succeeds};
 
 /// Time of best fit and the share found there, as networks/DARK_CLOUD.md states them.
-const TIME_YR: f64 = 1.778_279_410_038_923e6;
-const WITHIN: usize = 11;
-/// Rows that sit on the edge of the factor 10 (CO, N2H+, HCN, CH3OH ice) may step over it.
+const TIME_YR: f64 = 1.122_018_454_301_963e6;
+const WITHIN: usize = 13;
+/// Rows that sit on the edge of the factor 10 (N2H+, CN, CO ice, H2CO) may step over it.
 const MARGIN: usize = 1;
 /// Root mean square of log10(computed / observed) found there, and what it may drift.
-const RMS: f64 = 1.13;
+const RMS: f64 = 1.19;
 const RMS_MARGIN: f64 = 0.1;
 
 /// If it failed, the network or the surface chemistry had moved away from what is observed.

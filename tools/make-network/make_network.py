@@ -278,6 +278,13 @@ def ice_lines(species, binding, photodesorption, sources, report):
     return lines
 
 
+def surface_factor(row):
+    """One-sigma factor of a surface line, estimated: a rectangular barrier of 1 A differs from computed tunnelling
+    rates by about 10 either way (Lamberts et al. 2016, in the head of surface_reactions.csv); a barrierless line is
+    uncertain by its branching alone."""
+    return 10.0 if float(row["Ea_K"]) else 2.0
+
+
 def surface_lines(rows, sources, report):
     """The first form has no H2 ice: H2(ads) made leaves as H2, rows that need H2(ads) are left out."""
     weights = collections.Counter()
@@ -296,7 +303,7 @@ def surface_lines(rows, sources, report):
         lines.append(flow([
             ("change", scalar("%s -> %s" % (row["reactants"], products))),
             ("barrier", real(row["Ea_K"]) if float(row["Ea_K"]) else None), ("width", real(row["width_A"])),
-            ("share", real(share)), ("standing", row["confidence"]), ("source", sources.key(row["source"])),
+            ("share", real(share)), ("within", real(surface_factor(row))), ("standing", row["confidence"]), ("source", sources.key(row["source"])),
             ("note", noted(row["id"], row["note"]))]))
     return lines
 
