@@ -115,6 +115,24 @@ fn the_cells_of_a_table_are_in_working_units() {
     assert_eq!(disk.cells[1].light[0].shields, [None; 4]);
 }
 
+/// A column towards one field must win over the one for all fields, and that over the assumed one:
+/// the other way round the shielding of a field would be that of another.
+#[test]
+fn the_closest_column_counts() {
+    let heads = "radius [au],height [au],n_H [cm^-3],T_gas [K],UV_sky [Draine],AV_sky [mag],zeta_cosmic [s^-1]";
+    let column = |more: &str, values: &str, species: &str| {
+        let table = format!("{heads},{more}\n1,0,1e9,20,1,2,1e-17,{values}\n");
+        let case = read_case(SMALL, &[("dir/cells.csv", &table)]).unwrap();
+        let place = case.disk.column_species.iter().position(|s| s == species);
+        case.disk.cells[0].light[0].columns[place.unwrap()]
+    };
+    let both = "N_CO [cm^-2],N_CO_sky [cm^-2]";
+    assert_eq!(column(both, "1e15,1e16", "CO"), 1e16);
+    assert_eq!(column("N_CO [cm^-2]", "1e15", "CO"), 1e15);
+    let assumed = 5.0e-5 * 1.87e21 * 2.0;
+    assert!((column("N_CO_sky [cm^-2]", "1e16", "N2") / (assumed / 5.0) - 1.0).abs() < 1e-12);
+}
+
 /// What a run stores must give the same run again: bit for bit, from either kind of disk.
 #[test]
 fn a_resolved_case_reads_as_itself() {
