@@ -32,7 +32,12 @@ pub fn assemble(path: &Path, header: &RunHeader, source: &mut RecordSource) -> R
     let part = PartFile::beside(path)?;
     let failed = |cause: hdf5::Error| Failure::machine("writing the run file", path, cause);
     let file = File::with_options()
-        .with_fapl(|plist| plist.libver_bounds(LibraryVersion::V110, LibraryVersion::V110))
+        .with_fapl(|plist| {
+            plist
+                .libver_bounds(LibraryVersion::V110, LibraryVersion::V110)
+                // `PartFile` holds the lock.
+                .file_locking(false)
+        })
         .with_fcpl(|plist| {
             plist
                 .link_creation_order(hdf5::plist::file_create::LinkCreationOrder::Indexed)
@@ -111,7 +116,10 @@ pub(super) fn verify(
     blocks: &[u32],
     [cells, _, _]: [usize; 3],
 ) -> hdf5::Result<()> {
-    let file = File::open(part)?;
+    // Without HDF5's own lock, as written: the name of the part file is ours alone.
+    let file = File::with_options()
+        .with_fapl(|plist| plist.file_locking(false))
+        .open(part)?;
     for dataset in kept {
         dataset.check(&file)?;
     }

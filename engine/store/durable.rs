@@ -125,6 +125,12 @@ impl PartFile {
             let part = PathBuf::from(name);
             match OpenOptions::new().write(true).create_new(true).open(&part) {
                 Ok(handle) => {
+                    // The sign that somebody is at work on it, for `remove_leftovers`. Ours and not
+                    // HDF5's, whose handles child processes inherit together with their locks.
+                    let locked = handle.try_lock_exclusive();
+                    if !matches!(locked, Ok(true)) {
+                        log::debug!("{} could not be locked", part.display());
+                    }
                     let target = target.to_path_buf();
                     return Ok(PartFile {
                         part,

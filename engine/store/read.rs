@@ -93,8 +93,14 @@ fn open_run(path: &Path) -> Result<File, Failure> {
     if &start != b"\x89HDF\r\n\x1a\n" {
         return Err(wrong("a file that is not HDF5", "a run file of frostclock"));
     }
+    // Without HDF5's own lock: a run file is never written to once it has its name, and on many
+    // network file systems locking fails.
     let opened = File::with_options()
-        .with_fapl(|plist| plist.chunk_cache(CACHE_SLOTS, CACHE_BYTES, 0.75))
+        .with_fapl(|plist| {
+            plist
+                .chunk_cache(CACHE_SLOTS, CACHE_BYTES, 0.75)
+                .file_locking(false)
+        })
         .open(path);
     let file = opened.map_err(|cause| {
         wrong(
